@@ -1,0 +1,1 @@
+"""File formats: rows in and rows out, without knowledge of what they mean."""

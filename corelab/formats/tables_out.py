@@ -1,0 +1,40 @@
+"""A frame into a file that other programs read: CSV, Parquet."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from corelab.errors import Unavailable
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+
+def write_csv(path: Path, frame: pd.DataFrame) -> None:
+    """UTF-8 with a mark, comma, full precision; the texts as they are, and reading back the same."""
+    _replace(path, lambda part: frame.to_csv(part, index=False, encoding="utf-8-sig", lineterminator="\r\n"))
+
+
+def write_parquet(path: Path, frame: pd.DataFrame) -> None:
+    try:
+        import pyarrow  # noqa: F401
+    except ModuleNotFoundError as missing:
+        raise Unavailable("Parquet needs the package pyarrow: install corelab[parquet].") from missing
+    _replace(path, lambda part: frame.to_parquet(part, index=False))
+
+
+def _replace(path: Path, write: Callable[[Path], object]) -> None:
+    """Write beside the target and put it in place whole, so that a failure leaves the old file."""
+    part = path.with_name(f".{path.name}.part")
+    try:
+        write(part)
+        os.replace(part, path)
+    except OSError as trouble:
+        part.unlink(missing_ok=True)
+        raise Unavailable(
+            f"{path} cannot be written ({trouble.strerror or trouble}): see that the folder is there and the "
+            "file is not open elsewhere."
+        ) from trouble
