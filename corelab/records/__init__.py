@@ -1,0 +1,1 @@
+"""The relational record: schema, engines, history. The only room that knows SQL."""

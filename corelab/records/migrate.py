@@ -1,0 +1,102 @@
+"""Making a database and bringing it to the newest schema."""
+
+from __future__ import annotations
+
+import sqlite3
+from contextlib import closing
+from pathlib import Path
+
+import sqlalchemy as sa
+
+from corelab.errors import Unavailable
+from corelab.records import engine as engines
+from corelab.records import history, schema
+
+
+def migrations_folder() -> Path:
+    """Where the migrations lie: in the installed package, else beside it in a checkout."""
+    package = Path(__file__).resolve().parent.parent
+    for folder in (package / "_migrations", package.parent / "migrations"):
+        if (folder / "env.py").exists():
+            return folder
+    raise Unavailable("the migrations are missing from this installation: install corelab again")
+
+
+def schema_version(connection: sa.Connection) -> str:
+    """The migration at which a database stands; empty where it holds no lab.
+
+    Raises
+    ------
+    Unavailable
+        If the database belongs to something else.
+    """
+    tables = sa.inspect(connection).get_table_names()
+    if "alembic_version" not in tables:
+        if tables:
+            raise Unavailable(
+                f"the database holds other tables ({', '.join(sorted(tables)[:5])} …) and no lab: give "
+                "corelab a database of its own"
+            )
+        return ""
+    return connection.exec_driver_sql("SELECT version_num FROM alembic_version").scalar() or ""
+
+
+def require_current(connection: sa.Connection) -> None:
+    """Refuse a database that is missing, older or newer than this program."""
+    version = schema_version(connection)
+    if version == schema.SCHEMA:
+        return
+    if not version:
+        raise Unavailable("there is no lab in this database yet: run 'corelab setup' first")
+    if version < schema.SCHEMA:
+        raise Unavailable("this lab was made by an older corelab: run 'corelab setup' to bring it up to date")
+    raise Unavailable("this lab was made by a newer corelab: install that version or a later one")
+
+
+def upgrade(engine: sa.Engine, target: str = "head") -> tuple[str, str, Path | None]:
+    """Bring a database to `target`; returns the schema before and after, and the backup made.
+
+    One transaction: either all of it happens or none. An SQLite file that holds a lab is copied first;
+    foreign keys are off while tables are rebuilt and checked afterwards.
+    """
+    from alembic import command
+    from alembic.config import Config
+
+    config = Config()
+    config.set_main_option("script_location", str(migrations_folder()).replace("%", "%%"))
+    config.set_main_option("path_separator", "os")
+    file = engines.sqlite_file(engine.url)
+    backup: Path | None = None
+    with engines.trouble_named(engine), engine.connect() as connection:
+        if file is not None:
+            connection.exec_driver_sql("PRAGMA foreign_keys=OFF")
+            connection.rollback()
+        with connection.execution_options(corelab_mode="IMMEDIATE").begin():
+            if file is None:
+                connection.exec_driver_sql(f"SELECT pg_advisory_xact_lock({engines.WRITER_LOCK})")
+            before = schema_version(connection)
+            if file is not None and before and before != schema.SCHEMA:
+                backup = _copy(file, before)
+            config.attributes["connection"] = connection
+            command.upgrade(config, target)
+            after = schema_version(connection)
+            if after == schema.SCHEMA:
+                history.guard(connection)
+            if file is not None:
+                broken = connection.exec_driver_sql("PRAGMA foreign_key_check").fetchall()
+                if broken:
+                    raise Unavailable(
+                        f"the upgrade was undone and the lab is as it was: {len(broken)} rows would point at "
+                        "nothing"
+                    )
+        if file is not None:
+            connection.exec_driver_sql("PRAGMA foreign_keys=ON")
+            connection.rollback()
+    return before, after, backup
+
+
+def _copy(file: Path, version: str) -> Path:
+    target = file.with_name(f"{file.stem}.before-upgrade-from-{version}{file.suffix}")
+    with closing(sqlite3.connect(file)) as source, closing(sqlite3.connect(target)) as copy:
+        source.backup(copy)
+    return target

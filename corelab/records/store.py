@@ -1,0 +1,435 @@
+"""Reading and writing the record: identities, entries in force, results, settings, persons."""
+
+from __future__ import annotations
+
+import json
+import unicodedata
+from collections.abc import Collection, Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+import pandas as pd
+import sqlalchemy as sa
+
+from corelab.records import history, schema
+
+#: More plugs than this are read as whole tables rather than by their numbers.
+_WHOLE_TABLE_FROM = 400
+
+
+def name_key(name: str) -> str:
+    """What two names share that are the same name: no case, no surrounding spaces."""
+    return unicodedata.normalize("NFC", name).strip().casefold()
+
+
+@dataclass(frozen=True, slots=True)
+class NewEntry:
+    """A row to be written: its typed values by field, and what stood in the sheet."""
+
+    kind: str
+    values: dict[str, Any]
+    entered: Mapping[str, object]
+    file: str = ""
+    sheet: str = ""
+    row: int | None = None
+    supersedes: int | None = None
+
+
+@dataclass(slots=True)
+class Identities:
+    """The identities of the lab, by table, owner and name; new ones are added as they are named.
+
+    Standards are plugs of the well `standards`.
+    """
+
+    ids: dict[str, dict[tuple[int, str], int]]
+    names: dict[str, dict[int, str]]
+    owners: dict[str, dict[int, int]]
+    added: list[tuple[str, dict[str, Any]]] = field(default_factory=list)
+
+    @classmethod
+    def read(cls, connection: sa.Connection) -> Identities:
+        ids: dict[str, dict[tuple[int, str], int]] = {}
+        names: dict[str, dict[int, str]] = {}
+        owners: dict[str, dict[int, int]] = {}
+        for table in set(schema.IDENTITY.values()):
+            owner = table.c.get("well_id")
+            query = sa.select(
+                table.c.id, table.c.name, table.c.name_key, owner if owner is not None else sa.literal(0)
+            )
+            ids[table.name], names[table.name], owners[table.name] = {}, {}, {}
+            for number, name, key, well in connection.execute(query):
+                ids[table.name][(well, key)] = number
+                names[table.name][number] = name
+                owners[table.name][number] = well
+        return cls(ids, names, owners)
+
+    def find(self, kind: str, name: str, well_id: int = 0) -> int | None:
+        return self.ids[schema.IDENTITY[kind].name].get((well_id, name_key(name)))
+
+    def name(self, kind: str, number: int) -> str:
+        return self.names[schema.IDENTITY[kind].name][number]
+
+    def owner(self, kind: str, number: int) -> int:
+        return self.owners[schema.IDENTITY[kind].name][number]
+
+    def known(self, kind: str, well_id: int = 0) -> list[str]:
+        table = schema.IDENTITY[kind].name
+        return [self.names[table][n] for (owner, _), n in self.ids[table].items() if owner == well_id]
+
+    def add(self, kind: str, name: str, well_id: int = 0) -> int:
+        """The number of a name, made where it is new."""
+        found = self.find(kind, name, well_id)
+        if found is not None:
+            return found
+        table = schema.IDENTITY[kind].name
+        number = max(self.names[table], default=0) + 1
+        shown = unicodedata.normalize("NFC", name).strip()
+        row: dict[str, Any] = {"id": number, "name": shown, "name_key": name_key(name)}
+        if "well_id" in schema.IDENTITY[kind].c:
+            row["well_id"] = well_id
+        self.added.append((table, row))
+        self.ids[table][(well_id, row["name_key"])] = number
+        self.names[table][number] = shown
+        self.owners[table][number] = well_id
+        return number
+
+
+@dataclass(slots=True)
+class Change:
+    """What one transaction adds to the record; written in one go and closed by an event."""
+
+    connection: sa.Connection
+    number: int
+    digests: dict[str, list[str]] = field(default_factory=dict)
+
+    @classmethod
+    def begin(cls, connection: sa.Connection) -> Change:
+        last = connection.execute(sa.select(sa.func.max(schema.event.c.number))).scalar()
+        return cls(connection, (last or 0) + 1)
+
+    def rows(self, table: sa.Table, rows: Sequence[dict[str, Any]]) -> None:
+        """Add rows of an append-only table other than entries; `event` and `digest` are filled in."""
+        if not rows:
+            return
+        for row in rows:
+            row["event"] = self.number
+            row["digest"] = history.row_digest(table.name, row)
+        _insert(self.connection, table, rows)
+        self.digests.setdefault(table.name, []).extend(row["digest"] for row in rows)
+
+    def identities(self, identities: Identities) -> None:
+        for table in (t for t in schema.APPEND_ONLY if t in set(schema.IDENTITY.values())):
+            self.rows(table, [row for name, row in identities.added if name == table.name])
+        identities.added.clear()
+
+    def entries(self, new: Sequence[NewEntry]) -> list[int]:
+        """Add entries with their typed values; returns their numbers."""
+        last = self.connection.execute(sa.select(sa.func.max(schema.entry.c.id))).scalar() or 0
+        entries: list[dict[str, Any]] = []
+        typed: dict[str, list[dict[str, Any]]] = {}
+        for number, item in enumerate(new, start=last + 1):
+            entry: dict[str, Any] = {
+                "id": number,
+                "event": self.number,
+                "kind": item.kind,
+                "supersedes": item.supersedes,
+                "file": item.file,
+                "sheet": item.sheet,
+                "row": item.row,
+                "entered": json.dumps(item.entered, ensure_ascii=False),
+            }
+            if item.kind in schema.SHEET_TABLES:
+                table = schema.SHEET_TABLES[item.kind]
+                values = {
+                    "id": number,
+                    **{c.name: item.values.get(c.name) for c in table.c if c.name != "id"},
+                }
+                typed.setdefault(item.kind, []).append(values)
+            else:
+                values = {}
+            entry["digest"] = history.entry_digest(entry, item.kind, values)
+            entries.append(entry)
+        _insert(self.connection, schema.entry, entries)
+        for kind, rows in typed.items():
+            _insert(self.connection, schema.SHEET_TABLES[kind], rows)
+        self.digests.setdefault("entry", []).extend(entry["digest"] for entry in entries)
+        return [entry["id"] for entry in entries]
+
+    def close(
+        self,
+        *,
+        person: str,
+        command: str,
+        program_version: str,
+        reason: str = "",
+        detail: Mapping[str, object],
+    ) -> str:
+        """Write the event; returns the new seal."""
+        ordered = [d for table in schema.APPEND_ONLY for d in self.digests.get(table.name, [])]
+        return history.add_event(
+            self.connection,
+            number=self.number,
+            person=person,
+            command=command,
+            program_version=program_version,
+            reason=reason,
+            detail=detail,
+            digests=ordered,
+        )
+
+
+def _insert(connection: sa.Connection, table: sa.Table, rows: Sequence[Mapping[str, Any]]) -> None:
+    """Bulk insert by the driver's own executemany: several times faster than the expression language."""
+    if not rows:
+        return
+    names = [c.name for c in table.c]
+    columns = ", ".join(connection.dialect.identifier_preparer.quote(n) for n in names)
+    if connection.dialect.name == "postgresql":
+        with connection.connection.cursor().copy(f"COPY {table.name} ({columns}) FROM STDIN") as copy:
+            for row in rows:
+                copy.write_row([row[n] for n in names])
+        return
+    marks = ", ".join("?" * len(names))
+    connection.exec_driver_sql(
+        f"INSERT INTO {table.name} ({columns}) VALUES ({marks})",
+        [tuple(row[n] for n in names) for row in rows],
+    )
+
+
+def _superseded(entry_id: sa.ColumnElement[int]) -> sa.ColumnElement[bool]:
+    newer = schema.entry.alias("newer")
+    return sa.exists(sa.select(sa.literal(1)).where(newer.c.supersedes == entry_id))
+
+
+def in_force(
+    connection: sa.Connection, kind: str, ids: Collection[int] | None = None, by: str = "plug_id"
+) -> pd.DataFrame:
+    """The rows of a kind that are in force, oldest first: typed values, and `event` and `digest`.
+
+    Parameters
+    ----------
+    ids, by
+        Only rows whose column `by` is one of `ids`.
+    """
+    table = schema.SHEET_TABLES[kind]
+    query = (
+        sa.select(table, schema.entry.c.event, schema.entry.c.digest)
+        .join(schema.entry, schema.entry.c.id == table.c.id)
+        .where(~_superseded(table.c.id))
+        .order_by(table.c.id)
+    )
+    wanted = None
+    if ids is not None:
+        wanted = set(ids)
+        if len(wanted) <= _WHOLE_TABLE_FROM:
+            query = query.where(table.c[by].in_(sorted(wanted)))
+            wanted = None
+    frame = frame_of(connection, query)
+    return frame if wanted is None else frame[frame[by].isin(wanted)].reset_index(drop=True)
+
+
+def frame_of(connection: sa.Connection, query: sa.Select[Any]) -> pd.DataFrame:
+    """A query's rows as a frame: numbers as float64 with NaN for what is not there, texts as objects."""
+    result = connection.execute(query)
+    columns = list(query.selected_columns)
+    rows = result.fetchall()
+    data = zip(*rows, strict=True) if rows else ([] for _ in columns)
+    frame: dict[str, Any] = {}
+    for column, values in zip(columns, data, strict=True):
+        number = isinstance(column.type, (sa.Double, sa.REAL, sa.Float))
+        whole = isinstance(column.type, sa.Integer)
+        series = list(values)
+        if number or (whole and any(v is None for v in series)):
+            frame[column.name] = pd.Series(series, dtype="float64")
+        elif whole:
+            frame[column.name] = pd.Series(series, dtype="int64")
+        else:
+            frame[column.name] = pd.Series(series, dtype=object)
+    return pd.DataFrame(frame)
+
+
+def rows_of(frame: pd.DataFrame) -> list[dict[str, Any]]:
+    """The rows of a frame as mappings."""
+    return [{str(k): v for k, v in row.items()} for row in frame.to_dict("records")]
+
+
+def replace_results(
+    connection: sa.Connection, plug_ids: Collection[int], rows: Sequence[Mapping[str, Any]]
+) -> None:
+    """Put new results in the place of all results of these plugs."""
+    result = schema.result
+    numbers = sorted(plug_ids)
+    for start in range(0, len(numbers), 500):
+        connection.execute(sa.delete(result).where(result.c.plug_id.in_(numbers[start : start + 500])))
+    _insert(connection, result, rows)
+
+
+def results(connection: sa.Connection, plug_ids: Collection[int] | None = None) -> pd.DataFrame:
+    query = sa.select(schema.result)
+    if plug_ids is not None and len(plug_ids) <= _WHOLE_TABLE_FROM:
+        query = query.where(schema.result.c.plug_id.in_(sorted(plug_ids)))
+        plug_ids = None
+    frame = frame_of(connection, query.order_by(*schema.result.primary_key.columns))
+    return frame if plug_ids is None else frame[frame["plug_id"].isin(set(plug_ids))].reset_index(drop=True)
+
+
+def settings(connection: sa.Connection) -> dict[str, str]:
+    """The settings in force, as text."""
+    rows = connection.execute(
+        sa.select(schema.setting.c.name, schema.setting.c.value).order_by(schema.setting.c.id)
+    )
+    return {row.name: row.value for row in rows}
+
+
+def next_id(connection: sa.Connection, table: sa.Table) -> int:
+    return (connection.execute(sa.select(sa.func.max(table.c.id))).scalar() or 0) + 1
+
+
+def persons(connection: sa.Connection) -> dict[str, tuple[int, str, str]]:
+    """Registered persons by the key of their name: number, name, role in force."""
+    found: dict[str, tuple[int, str, str]] = {}
+    query = (
+        sa.select(
+            schema.person.c.id, schema.person.c.name, schema.person.c.name_key, schema.person_role.c.role
+        )
+        .join(schema.person_role, schema.person_role.c.person_id == schema.person.c.id)
+        .order_by(schema.person_role.c.id)
+    )
+    for number, name, key, role in connection.execute(query):
+        found[key] = (number, name, role)
+    return found
+
+
+def entry_row(connection: sa.Connection, number: int) -> dict[str, Any] | None:
+    """One entry with its typed values, and whether it is in force."""
+    row = (
+        connection.execute(
+            sa.select(schema.entry, (~_superseded(schema.entry.c.id)).label("in_force")).where(
+                schema.entry.c.id == number
+            )
+        )
+        .mappings()
+        .first()
+    )
+    if row is None:
+        return None
+    values = dict(row)
+    table = schema.SHEET_TABLES.get(values["kind"])
+    if table is not None:
+        typed = connection.execute(sa.select(table).where(table.c.id == number)).mappings().one()
+        values["values"] = dict(typed)
+    return values
+
+
+def entries_of(
+    connection: sa.Connection, plug_ids: Collection[int], kinds: Iterable[str], in_force_only: bool = False
+) -> pd.DataFrame:
+    """All entries about these plugs with their events, in order of their numbers."""
+    frames = []
+    for kind in kinds:
+        table = schema.SHEET_TABLES[kind]
+        if "plug_id" not in table.c:
+            continue
+        instruments = [
+            c for c in table.c if c.name in {"instrument_id", "balance_id", "caliper_id", "permeameter_id"}
+        ]
+        has = {c.name for c in table.c}
+        newer = schema.entry.alias("by")
+        query = (
+            sa.select(
+                table.c.plug_id,
+                schema.entry.c.id.label("number"),
+                schema.entry.c.kind,
+                (table.c.measured_on if "measured_on" in has else sa.null()).label("measured_on"),
+                (table.c.measured_by if "measured_by" in has else sa.null()).label("measured_by"),
+                (instruments[0] if instruments else sa.null()).label("instrument_id"),
+                schema.entry.c.file,
+                schema.entry.c.sheet,
+                schema.entry.c.row,
+                schema.entry.c.entered,
+                schema.entry.c.supersedes,
+                newer.c.id.label("superseded_by"),
+                newer.c.kind.label("superseded_kind"),
+                schema.event.c.number.label("event"),
+                schema.event.c.at,
+                schema.event.c.person,
+                schema.event.c.command,
+                schema.event.c.reason,
+            )
+            .join(schema.entry, schema.entry.c.id == table.c.id)
+            .join(schema.event, schema.event.c.number == schema.entry.c.event)
+            .outerjoin(newer, newer.c.supersedes == schema.entry.c.id)
+            .where(table.c.plug_id.in_(sorted(plug_ids)))
+        )
+        if in_force_only:
+            query = query.where(newer.c.id.is_(None))
+        frames.append(frame_of(connection, query))
+    filled = [frame for frame in frames if len(frame)]
+    if not filled:
+        return frames[0] if frames else pd.DataFrame()
+    return pd.concat(filled, ignore_index=True).sort_values("number", kind="stable").reset_index(drop=True)
+
+
+def withdrawals_of(connection: sa.Connection, numbers: Collection[int]) -> pd.DataFrame:
+    """Withdrawals of these entries, with the events that made them."""
+    entry, old = schema.entry, schema.entry.alias("old")
+    query = (
+        sa.select(
+            entry.c.supersedes,
+            old.c.kind.label("withdrawn_kind"),
+            schema.event.c.number.label("event"),
+            schema.event.c.at,
+            schema.event.c.person,
+            schema.event.c.command,
+            schema.event.c.reason,
+        )
+        .join(old, old.c.id == entry.c.supersedes)
+        .join(schema.event, schema.event.c.number == entry.c.event)
+        .where(entry.c.kind == schema.WITHDRAWAL, entry.c.supersedes.in_(sorted(numbers)))
+    )
+    return frame_of(connection, query)
+
+
+def entries_by_event(connection: sa.Connection, well_id: int, plug_ids: Collection[int]) -> pd.DataFrame:
+    """How many entries of each kind each event brought to a well, its runs and its plugs."""
+    entry, event = schema.entry, schema.event
+    subjects: list[sa.Select[Any]] = []
+    for table in schema.SHEET_TABLES.values():
+        if "plug_id" in table.c:
+            subjects.append(sa.select(table.c.id).where(table.c.plug_id.in_(sorted(plug_ids))))
+        elif "well_id" in table.c:
+            subjects.append(sa.select(table.c.id).where(table.c.well_id == well_id))
+        elif "gun_run_id" in table.c:
+            owned = sa.select(schema.gun_run.c.id).where(schema.gun_run.c.well_id == well_id)
+            subjects.append(sa.select(table.c.id).where(table.c.gun_run_id.in_(owned)))
+        elif "run_id" in table.c:
+            owned = sa.select(schema.run.c.id).where(schema.run.c.well_id == well_id)
+            subjects.append(sa.select(table.c.id).where(table.c.run_id.in_(owned)))
+    about = sa.union_all(*subjects).subquery()
+    touched = sa.or_(
+        entry.c.id.in_(sa.select(about.c.id)),
+        sa.and_(entry.c.kind == schema.WITHDRAWAL, entry.c.supersedes.in_(sa.select(about.c.id))),
+    )
+    query = (
+        sa.select(
+            event.c.number.label("event"),
+            event.c.at,
+            event.c.person,
+            event.c.command,
+            event.c.reason,
+            entry.c.kind,
+            sa.func.count().label("count"),
+            sa.func.count(entry.c.supersedes).label("corrections"),
+        )
+        .join(event, event.c.number == entry.c.event)
+        .where(touched)
+        .group_by(event.c.number, event.c.at, event.c.person, event.c.command, event.c.reason, entry.c.kind)
+        .order_by(event.c.number, entry.c.kind)
+    )
+    return frame_of(connection, query)
+
+
+def events(connection: sa.Connection) -> pd.DataFrame:
+    """Every event, first to last."""
+    return frame_of(connection, sa.select(schema.event).order_by(schema.event.c.number))
