@@ -1,0 +1,1 @@
+"""The bench: taking in sheets, and reducing readings to results."""

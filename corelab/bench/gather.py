@@ -1,0 +1,174 @@
+"""The readings in force of a tray of plugs, as arrays for the reduction."""
+
+from __future__ import annotations
+
+import hashlib
+from collections import defaultdict
+from collections.abc import Collection, Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+import pandas as pd
+import sqlalchemy as sa
+from numpy.typing import NDArray
+
+from corelab.bench import settings as lab_settings
+from corelab.records import store
+
+Floats = NDArray[np.float64]
+Whole = NDArray[np.intp]
+Texts = NDArray[np.object_]
+
+#: The kinds whose entries may enter the results of a plug.
+KINDS = (
+    "plugs",
+    "not measured",
+    "dimensions",
+    "immersion",
+    "masses",
+    "grain volume",
+    "pore volume",
+    "gas permeability",
+    "reported permeability",
+    "liquid permeability",
+    "distillation",
+    "retort",
+)
+
+
+@dataclass(slots=True)
+class Readings:
+    """Rows of one kind in force: `at` is the place of each row's plug in the tray."""
+
+    frame: pd.DataFrame
+    at: Whole
+
+    def __len__(self) -> int:
+        return len(self.frame)
+
+    def number(self, name: str) -> Floats:
+        return self.frame[name].to_numpy(dtype=np.float64, na_value=np.nan, copy=True)
+
+    def text(self, name: str) -> Texts:
+        return np.array(["" if v is None else v for v in self.frame[name]], dtype=object)
+
+
+@dataclass(frozen=True, slots=True)
+class CalibrationRows:
+    """The rows of one calibration of one instrument and setup."""
+
+    instrument_id: int
+    setup: str
+    name: str
+    date: str
+    frame: pd.DataFrame
+
+
+@dataclass(slots=True)
+class Tray:
+    """All that the results of some plugs depend on."""
+
+    plug_ids: Whole
+    readings: dict[str, Readings]
+    calibrations: dict[tuple[int, str], list[CalibrationRows]]
+    barometer_kpa: float
+    temperature_degc: float
+    fingerprints: list[str] = field(default_factory=list)
+
+    def __len__(self) -> int:
+        return len(self.plug_ids)
+
+
+def gather(connection: sa.Connection, plug_ids: Collection[int], stored: Mapping[str, str]) -> Tray:
+    """Read what the results of `plug_ids` depend on."""
+    ids = np.array(sorted(plug_ids), dtype=np.intp)
+    readings: dict[str, Readings] = {}
+    for kind in KINDS:
+        frame = store.in_force(connection, kind, ids.tolist())
+        readings[kind] = Readings(frame, np.searchsorted(ids, frame["plug_id"].to_numpy(dtype=np.intp)))
+    instruments = {
+        int(i) for kind in ("grain volume", "pore volume") for i in readings[kind].frame["instrument_id"]
+    }
+    rows = store.in_force(connection, "porosimeter calibration", instruments, by="instrument_id")
+    calibrations = _calibrations(rows)
+    tray = Tray(
+        ids,
+        readings,
+        calibrations,
+        lab_settings.number(stored, "barometric pressure"),
+        lab_settings.number(stored, "laboratory temperature"),
+    )
+    tray.fingerprints = _fingerprints(tray, stored)
+    return tray
+
+
+def _calibrations(rows: pd.DataFrame) -> dict[tuple[int, str], list[CalibrationRows]]:
+    """Rows of one instrument and setup with one label, or one date, are one calibration."""
+    found: dict[tuple[int, str], list[CalibrationRows]] = defaultdict(list)
+    if not len(rows):
+        return found
+    labels = [c or "" for c in rows["calibration"]]
+    days = [(d or "")[:10] for d in rows["measured_on"]]
+    together = [f"label {a.casefold()}" if a else f"day {d}" for a, d in zip(labels, days, strict=True)]
+    for (instrument, setup, _), group in rows.groupby(
+        [rows["instrument_id"], rows["setup"], pd.Series(together, index=rows.index)], sort=True
+    ):
+        dates = [d for d in group["measured_on"] if d]
+        label = next((c for c in group["calibration"] if c), "")
+        date = max(dates) if dates else ""
+        key = (int(instrument), str(setup))
+        name = label or date or "undated"
+        found[key].append(CalibrationRows(*key, name, date, group.reset_index(drop=True)))
+    return found
+
+
+def in_force(candidates: Sequence[CalibrationRows], date: str) -> CalibrationRows | str:
+    """The calibration that serves a reading of `date`, or why none does.
+
+    The newest dated on or before the reading; a single undated one serves all; two that could serve are
+    refused as ambiguous. For an undated reading only a single calibration can be told to serve.
+    """
+    undated = [c for c in candidates if not c.date]
+    if not candidates:
+        return "no calibration of the instrument is recorded"
+    if not date:
+        able = list(candidates)
+    else:
+        before = [c for c in candidates if c.date and _on_or_before(c.date, date)]
+        newest = max((c.date for c in before), default="")
+        able = [c for c in before if c.date == newest] + undated
+        if not able:
+            first = min(c.date for c in candidates)
+            return f"the reading of {date} is older than the first calibration ({first})"
+    if len(able) == 1:
+        return able[0]
+    names = ", ".join(f"'{c.name}'" for c in able)
+    when = "the reading has no date" if not date else "date or withdraw one of them"
+    return f"ambiguous: {len(able)} calibrations could serve ({names}); {when}"
+
+
+def _on_or_before(calibration: str, reading: str) -> bool:
+    if len(calibration) == 10 or len(reading) == 10:
+        return calibration[:10] <= reading[:10]
+    return calibration <= reading
+
+
+def _fingerprints(tray: Tray, stored: Mapping[str, str]) -> list[str]:
+    """For each plug, a digest of all entries and settings on which its results may depend."""
+    digests: list[list[str]] = [[] for _ in range(len(tray))]
+    for kind in KINDS:
+        readings = tray.readings[kind]
+        for place, digest in zip(readings.at, readings.frame["digest"], strict=True):
+            digests[place].append(digest)
+    of_instrument: dict[int, list[str]] = defaultdict(list)
+    for (instrument, _), calibrations in sorted(tray.calibrations.items()):
+        for calibration in calibrations:
+            of_instrument[instrument] += list(calibration.frame["digest"])
+    for kind in ("grain volume", "pore volume"):
+        readings = tray.readings[kind]
+        used = set(zip(readings.at.tolist(), readings.frame["instrument_id"].tolist(), strict=True))
+        for place, instrument in used:
+            digests[place] += of_instrument[int(instrument)]
+    moving = [s.name for s in lab_settings.SETTINGS.values() if s.moves_results]
+    common = [f"{name}={lab_settings.value(stored, name)}" for name in moving]
+    return [hashlib.sha256("\n".join([*sorted(own), *common]).encode()).hexdigest() for own in digests]

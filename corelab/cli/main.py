@@ -1,0 +1,551 @@
+"""The commands. Heavy libraries are imported by the command that needs them."""
+
+from __future__ import annotations
+
+import os
+import sys
+import traceback
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from corelab import __version__
+from corelab.cli import show
+from corelab.errors import CorelabError, Refused, Usage, did_you_mean, quoted
+
+if TYPE_CHECKING:
+    from corelab.bench.load import LoadReport
+    from corelab.lab import Lab
+
+app = typer.Typer(
+    name="corelab",
+    no_args_is_help=True,
+    add_completion=False,
+    pretty_exceptions_enable=False,
+    rich_markup_mode=None,
+    help="A core laboratory's record: wells, cores, sidewall shots, plugs, every reading, and what follows.",
+)
+sheet_app = typer.Typer(
+    no_args_is_help=True, rich_markup_mode=None, help="Bench sheets: kinds, blank ones, loading."
+)
+well_app = typer.Typer(no_args_is_help=True, rich_markup_mode=None, help="Wells.")
+plug_app = typer.Typer(no_args_is_help=True, rich_markup_mode=None, help="Plugs.")
+person_app = typer.Typer(no_args_is_help=True, rich_markup_mode=None, help="People.")
+write_app = typer.Typer(no_args_is_help=True, rich_markup_mode=None, help="What leaves the laboratory.")
+app.add_typer(sheet_app, name="sheet")
+app.add_typer(well_app, name="well")
+app.add_typer(plug_app, name="plug")
+app.add_typer(person_app, name="person")
+app.add_typer(write_app, name="write")
+
+_DECIMALS = {
+    "depth [m]": 2, "log depth [m]": 2, "depth [ft]": 2, "log depth [ft]": 2,
+    "bulk volume [cm3]": 3, "grain volume [cm3]": 3, "pore volume [cm3]": 3, "dry mass [g]": 3,
+    "porosity [v/v]": 4, "grain density [g/cm3]": 3, "bulk density [g/cm3]": 3, "mean pressure [kPa]": 1,
+    "oil saturation [v/v]": 3, "water saturation [v/v]": 3, "gas saturation [v/v]": 3,
+    "porosity stress [MPa]": 1, "permeability stress [MPa]": 1, "recovery [%]": 1,
+}  # fmt: skip
+_LENGTHS = {
+    f"{c} [{u}]": 2 for c in ("top depth", "base depth", "cut", "recovered", "lost") for u in ("m", "ft")
+}
+
+Well = Annotated[str, typer.Argument(metavar="WELL", help="Name of the well.")]
+Plug = Annotated[str, typer.Argument(metavar="PLUG", help="Name of the plug.")]
+Top = Annotated[float | None, typer.Option(metavar="DEPTH", help="Shallowest depth, inclusive.")]
+Base = Annotated[float | None, typer.Option(metavar="DEPTH", help="Deepest depth, inclusive.")]
+Basis = Annotated[
+    str, typer.Option("--depth", metavar="driller|log", help="Depths asked for; else each plug's own.")
+]
+DepthUnit = Annotated[
+    str, typer.Option("--unit", metavar="m|ft", help="Unit of depths; else the well's own.")
+]
+Where = Annotated[
+    str, typer.Option(metavar="EXPR", help="Condition, such as \"porosity > 0.12 and facies = 'sand'\".")
+]
+Stress = Annotated[
+    float | None, typer.Option(metavar="MPA", help="Net confining stress; else the lowest measured.")
+]
+Uncertain = Annotated[bool, typer.Option("--with-uncertainty", help="Add the standard uncertainties.")]
+Format = Annotated[str, typer.Option("--format", metavar="table|csv|json|parquet", help="How to show it.")]
+TableOrJson = Annotated[str, typer.Option("--format", metavar="table|json", help="How to show it.")]
+Out = Annotated[
+    Path | None, typer.Option("--out", metavar="FILE", help="Write to a file instead of the terminal.")
+]
+OutFile = Annotated[Path, typer.Option("--out", metavar="FILE", help="File to write.")]
+Reason = Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why; kept in the history.")]
+
+
+class _State:
+    database = "corelab.db"
+    by = ""
+
+
+def _lab() -> Lab:
+    from corelab.lab import Lab
+
+    return Lab(_State.database, _State.by)
+
+
+def _one_of(option: str, value: str, *allowed: str) -> str:
+    if value not in allowed:
+        raise Usage(f"{option} is one of {', '.join(allowed)}; found {quoted(value)}.")
+    return value
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        typer.echo(f"corelab {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _options(
+    database: Annotated[
+        str,
+        typer.Option(
+            envvar="CORELAB_DATABASE", metavar="URL_OR_FILE", help="The lab: an SQLite file or a URL."
+        ),
+    ] = "corelab.db",
+    by: Annotated[
+        str, typer.Option(envvar="CORELAB_BY", metavar="PERSON", help="Who acts; else the login name.")
+    ] = "",
+    version: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Show the version.")
+    ] = False,
+) -> None:
+    _State.database, _State.by = database, by
+
+
+@app.command()
+def setup() -> None:
+    """Make the database, or bring it to the newest schema."""
+    with _lab() as lab:
+        done = lab.setup()
+        if done.made:
+            show.tell(f"Made a new lab in {_State.database} (schema {done.after}).")
+        elif done.before != done.after:
+            show.tell(f"Brought {_State.database} from schema {done.before} to {done.after}.")
+        else:
+            show.tell(f"{_State.database} is up to date (schema {done.after}).")
+        if done.backup:
+            show.tell(f"The lab as it was before is kept in {done.backup}.")
+
+
+@app.command()
+def setting(
+    name: Annotated[str, typer.Argument(metavar="[NAME]", help="Name of a setting.")] = "",
+    value: Annotated[
+        str, typer.Argument(metavar="[VALUE]", help="New value, with a unit if not its own.")
+    ] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """Show the laboratory's settings, or change one."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.setting(name, value or None)
+    show.print_json(show.json_records(frame, ())) if form == "json" else show.print_table(frame)
+
+
+@app.command()
+def demo(
+    folder: Annotated[Path, typer.Argument(metavar="[FOLDER]", help="Where to build it.")] = Path("demo-lab"),
+) -> None:
+    """Build the demo lab in FOLDER, compute everything, and write what a partner would get."""
+    from corelab.demo import build
+
+    build(folder, show.tell, typer.echo)
+
+
+@sheet_app.command("kinds")
+def sheet_kinds(
+    kind: Annotated[str, typer.Argument(metavar="[KIND]", help="A kind, to see its columns.")] = "",
+) -> None:
+    """List the bench sheets, or the columns of one."""
+    from corelab.sheets import SHEETS, kind_named
+
+    if not kind:
+        for sheet in SHEETS.values():
+            sort = "readings" if sheet.reading else "register"
+            typer.echo(f"{sheet.kind:24}  {sort:8}  {sheet.title}")
+        return
+    found = kind_named(kind)
+    if found is None:
+        raise Usage(f"There is no bench sheet {quoted(kind)}; {did_you_mean(kind, list(SHEETS), 40)}")
+    sheet = SHEETS[found]
+    typer.echo(f"{sheet.title} ({sheet.kind})")
+    for column in sheet.columns:
+        marks = [w for w, on in (("must be filled in", column.required), ("identity", column.key)) if on]
+        marks += [f"one of: {', '.join(column.choices)}"] if column.choices else []
+        marks += [f"default {column.default}"] if column.default else []
+        typer.echo(f"  {column.heading:34}  {column.note}" + (f" ({'; '.join(marks)})" if marks else ""))
+    if sheet.caution:
+        typer.echo(f"Caution: {sheet.caution}")
+
+
+@sheet_app.command("blank")
+def sheet_blank(
+    kinds: Annotated[
+        list[str], typer.Argument(metavar="KIND…", help="Kinds of sheets; 'all' for every one.")
+    ],
+    out: OutFile,
+    well: Annotated[str, typer.Option(metavar="WELL", help="Fill in the plugs of this well.")] = "",
+) -> None:
+    """Write empty bench sheets, ready to fill in."""
+    from corelab.sheets import SHEETS, kind_named
+
+    chosen: list[str] = []
+    for kind in list(SHEETS) if kinds == ["all"] else kinds:
+        found = kind_named(kind)
+        if found is None:
+            raise Usage(f"There is no bench sheet {quoted(kind)}; {did_you_mean(kind, list(SHEETS), 40)}")
+        chosen.append(found)
+    if out.suffix.lower() != ".xlsx":
+        raise Usage(f"A blank sheet is an Excel workbook: name it .xlsx, not {quoted(out.name)}.")
+    if out.exists():
+        raise Usage(f"{out} is there already, perhaps filled in: name another file, or remove it first.")
+    with _lab() as lab:
+        lab.sheet_blank(chosen, out, well)
+    show.tell(f"Wrote {out}: {', '.join(chosen)}.")
+
+
+@sheet_app.command("load")
+def sheet_load(
+    paths: Annotated[
+        list[Path], typer.Argument(metavar="PATH…", help=".xlsx or .csv files, or folders of them.")
+    ],
+    check: Annotated[bool, typer.Option("--check", help="Only report what a load would do.")] = False,
+    reason: Reason = "",
+    decimal_comma: Annotated[
+        bool, typer.Option("--decimal-comma", help="CSV numbers have decimal commas, and ; between columns.")
+    ] = False,
+) -> None:
+    """Load bench sheets: all or nothing, every problem named."""
+    with _lab() as lab:
+        report = lab.load(paths, check=check, reason=reason, decimal_comma=decimal_comma, told=show.tell)
+    _tell_load(report)
+
+
+def _tell_load(report: LoadReport) -> None:
+    def counted(words: str, counts: dict[str, int]) -> None:
+        if counts:
+            total = sum(counts.values())
+            show.tell(f"{words} {total}: " + ", ".join(f"{n} of {kind}" for kind, n in counts.items()))
+
+    if report.ignored:
+        show.tell(f"passed over: {', '.join(report.ignored[:8])}" + (" …" if len(report.ignored) > 8 else ""))
+    if report.notices:
+        show.tell(f"Worth a question ({len(report.notices)}):")
+        show.print_lines([f"  {notice}" for notice in report.notices], 40)
+    would = "Would be " if report.checked_only else ""
+    counted(f"{would}new" if would else "New", report.new)
+    counted(f"{would}corrected" if would else "Corrected", report.corrected)
+    counted("Unchanged", report.unchanged)
+    if report.changes and report.checked_only:
+        show.tell("No problem found; nothing was written.")
+    elif report.changes:
+        show.tell(f"Computed the results of {report.plugs} plugs.")
+        if report.not_computed:
+            show.tell("Not computed, with the number of plugs:")
+            show.print_lines([f"  {line}" for line in report.not_computed], 40)
+        show.tell(f"Seal {report.seal}")
+    else:
+        show.tell("Nothing changed: the record has all of this already.")
+
+
+@app.command()
+def withdraw(
+    number: Annotated[int, typer.Argument(metavar="NUMBER", help="Number of the reading, from 'plug show'.")],
+    reason: Reason = "",
+) -> None:
+    """Take a reading out of force, for one entered on the wrong plug."""
+    with _lab() as lab:
+        row = lab.withdraw(number, reason)
+    show.tell(f"Withdrew {row['kind']} {number}; the results were computed anew.")
+
+
+@well_app.command("list")
+def well_list(form: TableOrJson = "table") -> None:
+    """List the wells."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.well_list()
+    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame)
+
+
+@plug_app.command("list")
+def plug_list(well: Well, form: TableOrJson = "table") -> None:
+    """List the plugs of a well."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.plug_list(well)
+    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame, _DECIMALS)
+
+
+@plug_app.command("show")
+def plug_show(well: Well, plug: Plug, form: TableOrJson = "table") -> None:
+    """Show all that is recorded of a plug, with the numbers of its readings, and its results."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.plug_show(well, plug)
+    if form == "json":
+        show.print_json({name: show.json_records(frame) for name, frame in found.items()})
+        return
+    for name, frame in found.items():
+        typer.echo(f"{name}:")
+        show.print_table(frame, wrap="entry")
+        typer.echo()
+
+
+@person_app.command("add")
+def person_add(
+    name: Annotated[str, typer.Argument(metavar="NAME", help="The person's name.")],
+    role: Annotated[
+        str, typer.Option(metavar="technician|reviewer|geologist|manager", help="The person's role.")
+    ],
+) -> None:
+    """Register a person, or give one another role; the first must be a manager."""
+    with _lab() as lab:
+        lab.person_add(name, role)
+    show.tell(f"Registered {name} as {role}.")
+
+
+@app.command()
+def recovery(well: Well, unit: DepthUnit = "", form: TableOrJson = "table") -> None:
+    """Core runs and sidewall shots: cut, recovered, lost, and why."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.recovery(well, unit)
+    if form == "json":
+        show.print_json({name: show.json_records(frame) for name, frame in found.items()})
+        return
+    for name, frame in found.items():
+        typer.echo(f"{name}:")
+        show.print_table(frame, _DECIMALS | _LENGTHS)
+        typer.echo()
+
+
+@app.command()
+def board(
+    well: Annotated[str, typer.Argument(metavar="[WELL]", help="Only this well.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """Where every plug is and what it waits for."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.board(well)
+    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame)
+
+
+@app.command()
+def interval(
+    well: Well,
+    top: Top = None,
+    base: Base = None,
+    depth: Basis = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    stress: Stress = None,
+    with_uncertainty: Uncertain = False,
+    form: Format = "table",
+    out: Out = None,
+) -> None:
+    """The plugs of an interval and their results."""
+    _one_of("--format", form, "table", "csv", "json", "parquet")
+    if form == "parquet" and out is None:
+        raise Usage("Parquet is for files: name one with --out FILE.")
+    with _lab() as lab:
+        frame = lab.interval(
+            well,
+            top,
+            base,
+            depth=depth,
+            unit=unit,
+            where=where,
+            stress=stress,
+            with_uncertainty=with_uncertainty,
+        )
+    if out is not None and form in {"csv", "parquet"}:
+        from corelab.formats import tables_out
+
+        tables_out.write_csv(out, frame) if form == "csv" else tables_out.write_parquet(out, frame)
+        show.tell(f"Wrote {len(frame)} plugs to {out}.")
+        return
+    with _output(out):
+        if form == "json":
+            show.print_json(show.json_records(frame))
+        elif form == "csv":
+            typer.echo(frame.to_csv(index=False), nl=False)
+        else:
+            hidden = {
+                "well",
+                "laboratory",
+                "status",
+                "bulk volume [cm3]",
+                "dry mass [g]",
+                "bulk density [g/cm3]",
+            }
+            shown = [c for c in frame.columns if c not in hidden]
+            show.print_table(frame[shown], _DECIMALS, wrap="flags")
+            typer.echo(f"{len(frame)} plugs")
+
+
+class _output:
+    """Standard output, or a file in its place."""
+
+    def __init__(self, out: Path | None) -> None:
+        self.out = out
+
+    def __enter__(self) -> None:
+        if self.out is not None:
+            try:
+                self.file = self.out.open("w", encoding="utf-8", newline="")
+            except OSError as trouble:
+                raise CorelabError(f"{self.out} cannot be written: {trouble.strerror}.") from trouble
+            self.before, sys.stdout = sys.stdout, self.file
+
+    def __exit__(self, *_: object) -> None:
+        if self.out is not None:
+            sys.stdout = self.before
+            self.file.close()
+            show.tell(f"Wrote {self.out}.")
+
+
+@app.command()
+def history(
+    well: Annotated[str, typer.Argument(metavar="[WELL]", help="Only this well.")] = "",
+    plug: Annotated[str, typer.Argument(metavar="[PLUG]", help="Only this plug.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """Who entered or changed what, when and why."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.history(well, plug)
+    if form == "json":
+        show.print_json(show.json_records(frame))
+        return
+    for row in frame.to_dict("records"):
+        what = row.get("what") or row["detail"]
+        why = (
+            f" Why: {row['reason']}"
+            if row.get("reason")
+            else (f" Why: {row['why']}" if row.get("why") else "")
+        )
+        event = row.get("event", row.get("number"))
+        when = str(row["at"])[:19].replace("T", " ")
+        typer.echo(f"{event:>5}  {when} UTC  {row['person']}  {row['command']}: {what}.{why}")
+
+
+@app.command()
+def recompute(
+    check: Annotated[bool, typer.Option("--check", help="Only report; change nothing.")] = False,
+) -> None:
+    """Compute all results anew from the readings in force, and report any that differs."""
+    with _lab() as lab:
+        found = lab.recompute(check=check)
+    if not len(found):
+        show.tell("All results follow from the readings in force.")
+        return
+    show.print_table(found)
+    show.tell(f"{len(found)} results differed" + ("." if check else " and were replaced."))
+    if check:
+        raise typer.Exit(1)
+
+
+@app.command()
+def methods(
+    key: Annotated[str, typer.Argument(metavar="[KEY]", help="Key of one calculation.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """The calculations: equation, symbols, units, range, source."""
+    from corelab.lab import methods as described
+
+    _one_of("--format", form, "table", "json")
+    found = described(key)
+    if form == "json":
+        show.print_json(found)
+    elif key:
+        for name, text in found[0].items():
+            typer.echo(f"{name}: {text}")
+    else:
+        for method in found:
+            typer.echo(f"{method['key']:36}  {method['title']}")
+
+
+@write_app.command("workbook")
+def write_workbook(
+    well: Well,
+    out: OutFile,
+    partner: Annotated[str, typer.Option("--for", metavar="PARTNER", help="Whom it is for.")] = "",
+    unit: DepthUnit = "",
+) -> None:
+    """Write the workbook of a well that a partner receives."""
+    with _lab() as lab:
+        lab.write_workbook(well, out, recipient=partner, unit=unit)
+    show.tell(f"Wrote {out}.")
+
+
+@write_app.command("csv")
+def write_csv(well: Well, out: OutFile, unit: DepthUnit = "", where: Where = "") -> None:
+    """Write the results of a well as CSV."""
+    with _lab() as lab:
+        lab.write_csv(well, out, unit=unit, where=where)
+    show.tell(f"Wrote {out}.")
+
+
+@write_app.command("parquet")
+def write_parquet(well: Well, out: OutFile, unit: DepthUnit = "", where: Where = "") -> None:
+    """Write the results of a well as Parquet."""
+    with _lab() as lab:
+        lab.write_parquet(well, out, unit=unit, where=where)
+    show.tell(f"Wrote {out}.")
+
+
+def run() -> None:
+    """The program's entry: no traceback reaches a user."""
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(encoding="utf-8", errors="replace")
+    try:
+        app()
+    except Refused as refused:
+        show.print_lines([refused.summary, *(f"  {problem}" for problem in refused.problems)], 200)
+        sys.exit(1)
+    except Usage as wrong:
+        show.tell(str(wrong))
+        sys.exit(2)
+    except CorelabError as trouble:
+        show.tell(str(trouble))
+        sys.exit(1)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        sys.exit(1)
+    except Exception as fault:
+        log = _log_fault()
+        show.tell(
+            f"This should not have happened ({type(fault).__name__}). Nothing was written to the record. "
+            f"{f'Details are in {log}; please' if log else 'Please'} pass them on to who keeps corelab."
+        )
+        sys.exit(1)
+
+
+def _log_fault() -> Path | None:
+    """Keep the details of a fault of the program's own beside the lab, else in the folder at hand."""
+    from datetime import UTC, datetime
+
+    command = " ".join(sys.argv[1:])
+    text = f"{datetime.now(UTC).isoformat()} corelab {__version__}: {command}\n{traceback.format_exc()}\n"
+    for folder in (Path(_State.database).parent, Path.cwd()):
+        try:
+            if "://" not in str(folder) and folder.is_dir():
+                log = folder / "corelab.log"
+                with log.open("a", encoding="utf-8") as file:
+                    file.write(text)
+                return log
+        except OSError:
+            continue
+    return None
+
+
+if __name__ == "__main__":
+    run()

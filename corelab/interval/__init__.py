@@ -1,0 +1,1 @@
+"""What the geologist asks: which plugs, and what they show."""

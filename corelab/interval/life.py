@@ -1,0 +1,81 @@
+"""What happened to a plug, or in a well, told in plain words from the events."""
+
+from __future__ import annotations
+
+import json
+from typing import Any
+
+import pandas as pd
+import sqlalchemy as sa
+
+from corelab.interval.select import plugs_of_well
+from corelab.records import store
+from corelab.records.schema import SHEET_TABLES, WITHDRAWAL
+
+COLUMNS = ("event", "at", "person", "what", "why", "command")
+
+
+def entries_of_plugs(
+    connection: sa.Connection, plug_ids: list[int], *, in_force_only: bool = False
+) -> pd.DataFrame:
+    """Every entry about these plugs, with its event."""
+    return store.entries_of(connection, plug_ids, SHEET_TABLES, in_force_only)
+
+
+def of_plug(connection: sa.Connection, plug: int) -> pd.DataFrame:
+    """The life of one plug: each entry, correction and withdrawal on a line of its own."""
+    entries = entries_of_plugs(connection, [plug])
+    lines: list[dict[str, Any]] = []
+    for entry in entries.to_dict("records"):
+        what = f"entered {entry['kind']} #{entry['number']}"
+        if not pd.isna(entry["supersedes"]):
+            what = f"corrected {entry['kind']} #{int(entry['supersedes'])} by #{entry['number']}"
+        what += f": {entered_words(entry['entered'])}{_place(entry)}"
+        lines.append(_line(entry, what))
+    numbers = [int(n) for n in entries["number"]] if len(entries) else []
+    for withdrawal in store.withdrawals_of(connection, numbers).to_dict("records"):
+        what = f"withdrew {withdrawal['withdrawn_kind']} #{int(withdrawal['supersedes'])}"
+        lines.append(_line(withdrawal, what))
+    lines.sort(key=lambda line: line["event"])
+    return pd.DataFrame(lines, columns=list(COLUMNS))
+
+
+def of_well(connection: sa.Connection, identities: store.Identities, well: int) -> pd.DataFrame:
+    """The life of a well: what each event brought to it and its plugs."""
+    counts = store.entries_by_event(connection, well, plugs_of_well(identities, well))
+    lines = []
+    for event, group in counts.groupby("event", sort=True):
+        first = group.iloc[0]
+        parts = [
+            f"{row['count']} withdrawn" if row["kind"] == WITHDRAWAL else f"{row['count']} of {row['kind']}"
+            for _, row in group.iterrows()
+        ]
+        corrected = int(group["corrections"].sum())
+        what = "entered " + ", ".join(parts) + (f" ({corrected} of them corrections)" if corrected else "")
+        lines.append(_line({**first.to_dict(), "event": event}, what))
+    return pd.DataFrame(lines, columns=list(COLUMNS))
+
+
+def _line(entry: dict[str, Any], what: str) -> dict[str, Any]:
+    return {
+        "event": int(entry["event"]),
+        "at": entry["at"],
+        "person": entry["person"],
+        "what": what,
+        "why": entry["reason"],
+        "command": entry["command"],
+    }
+
+
+def entered_words(text: str) -> str:
+    return ", ".join(
+        f"{heading} {value}" for heading, value in json.loads(text).items() if heading not in {"well", "plug"}
+    )
+
+
+def _place(entry: dict[str, Any]) -> str:
+    if not entry["file"]:
+        return ""
+    sheet = f", sheet '{entry['sheet']}'" if entry["sheet"] else ""
+    row = f", row {int(entry['row'])}" if not pd.isna(entry["row"]) else ""
+    return f" (from {entry['file']}{sheet}{row})"

@@ -1,0 +1,415 @@
+"""The plugs of an interval and their results: one row a plug, the columns that everyone relies on."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+import pandas as pd
+import sqlalchemy as sa
+from numpy.typing import NDArray
+
+from corelab import units
+from corelab.bench import settings as lab_settings
+from corelab.bench.reduce import REPORTED, STRESS_NOT_STATED
+from corelab.errors import NotFound, Usage, did_you_mean, quoted
+from corelab.interval import where as conditions
+from corelab.quantities import RESULTS
+from corelab.records import store
+from corelab.sheets.readings import DIRECTIONS, GASES
+
+#: Headings of an interval, in order; depths in metres until a unit is asked for.
+COLUMNS = (
+    "well",
+    "plug",
+    "source",
+    "laboratory",
+    "run",
+    "depth [m]",
+    "depth basis",
+    "log depth [m]",
+    "orientation",
+    "facies",
+    "lithology",
+    "bulk volume [cm3]",
+    "grain volume [cm3]",
+    "pore volume [cm3]",
+    "dry mass [g]",
+    "porosity [v/v]",
+    "porosity route",
+    "porosity stress [MPa]",
+    "grain density [g/cm3]",
+    "bulk density [g/cm3]",
+    "gas permeability [mD]",
+    "gas",
+    "mean pressure [kPa]",
+    "klinkenberg permeability [mD]",
+    "slip factor [kPa]",
+    "slip basis",
+    "permeability basis",
+    "permeability stress [MPa]",
+    "oil saturation [v/v]",
+    "water saturation [v/v]",
+    "gas saturation [v/v]",
+    "crush likelihood [v/v]",
+    "crush verdict",
+    "status",
+    "flags",
+)
+DEPTH_COLUMNS = ("depth [m]", "log depth [m]")
+COMPUTED = tuple(c for c in COLUMNS if conditions.bare(c) in RESULTS)
+TEXT_COLUMNS = frozenset(c for c in COLUMNS if "[" not in c)
+_VOLUMES = (
+    "bulk volume",
+    "grain volume",
+    "pore volume",
+    "dry mass",
+    "porosity",
+    "grain density",
+    "bulk density",
+)
+_SATURATIONS = ("oil saturation", "water saturation", "gas saturation")
+_REASONED = (
+    "bulk volume",
+    "grain volume",
+    "dry mass",
+    "porosity",
+    "grain density",
+    "klinkenberg permeability",
+)
+_SAME_STRESS_MPA = 0.005
+
+
+@dataclass(frozen=True, slots=True)
+class Filters:
+    """What of a well is asked for; depths in `unit`, inclusive."""
+
+    top: float | None = None
+    base: float | None = None
+    depth: str = ""  # driller, log, or empty: each plug's own
+    unit: str = ""  # m, ft, or empty: the well's own
+    where: str = ""
+    stress_mpa: float | None = None
+    with_uncertainty: bool = False
+
+
+def natural_key(name: str) -> tuple[Any, ...]:
+    """Sort key under which 2H stands before 10H."""
+    parts = re.split(r"(\d+)", name.casefold())
+    return tuple((0, int(p), "") if p.isdigit() else (1, 0, p) for p in parts if p)
+
+
+def well_id(identities: store.Identities, name: str) -> int:
+    """The number of a well.
+
+    Raises
+    ------
+    NotFound
+        If there is none of this name; tells the nearest.
+    """
+    found = identities.find("well", name)
+    if found is None:
+        known = sorted((w for w in identities.known("well") if w != "standards"), key=natural_key)
+        raise NotFound(f"There is no well {quoted(name)}; {did_you_mean(name, known)}")
+    return found
+
+
+def plug_id(identities: store.Identities, well: str, plug: str) -> int:
+    owner = well_id(identities, well)
+    found = identities.find("plug", plug, owner)
+    if found is None:
+        known = sorted(identities.known("plug", owner), key=natural_key)
+        raise NotFound(f"There is no plug {quoted(plug)} in well {quoted(well)}; {did_you_mean(plug, known)}")
+    return found
+
+
+def plugs_of_well(identities: store.Identities, well: int) -> list[int]:
+    return [number for number, owner in identities.owners["plug"].items() if owner == well]
+
+
+def depth_unit(facts: pd.DataFrame, stored: Mapping[str, str], asked: str = "") -> str:
+    """The unit in which a well's depths are answered."""
+    if asked and asked not in {"m", "ft"}:
+        raise Usage(f"--unit is m or ft, not {quoted(asked)}.")
+    if asked:
+        return asked
+    return str(facts["depth_unit"].iloc[-1]) if len(facts) else lab_settings.value(stored, "depth unit")
+
+
+def interval(
+    connection: sa.Connection, identities: store.Identities, well: str, filters: Filters
+) -> pd.DataFrame:
+    """One row a plug that passes the filters, by depth and then by name.
+
+    Returns
+    -------
+    DataFrame
+        The columns `COLUMNS`, depths in the unit asked for; NaN or empty text for what is not there.
+    """
+    if filters.depth and filters.depth not in {"driller", "log"}:
+        raise Usage(f"--depth is driller or log, not {quoted(filters.depth)}.")
+    number = well_id(identities, well)
+    stored = store.settings(connection)
+    well_facts = store.in_force(connection, "wells", [number], by="well_id")
+    unit = depth_unit(well_facts, stored, filters.unit)
+    frame = _facts(connection, identities, number, well_facts, stored)
+    _place(frame, filters.depth)
+    _add_results(frame, connection, stored, filters.stress_mpa)
+    metre, target = units.unit("m", "length"), units.unit(unit, "length")
+    for column in DEPTH_COLUMNS:
+        frame[column] = units.convert(frame[column].to_numpy(dtype=np.float64), metre, target)
+    keep = np.ones(len(frame), dtype=np.bool_)
+    depth = frame["depth [m]"].to_numpy(dtype=np.float64)
+    slack = 1e-9 * np.maximum(1.0, np.abs(depth))
+    if filters.top is not None:
+        keep &= depth >= filters.top - slack
+    if filters.base is not None:
+        keep &= depth <= filters.base + slack
+    if filters.where:
+        keep &= conditions.apply(conditions.parse(filters.where, COLUMNS), frame)
+    order = sorted(
+        np.flatnonzero(keep),
+        key=lambda i: (np.nan_to_num(depth[i], nan=np.inf), natural_key(frame["plug"].iat[i])),
+    )
+    headings = list(COLUMNS)
+    if filters.with_uncertainty:
+        headings = [h for c in COLUMNS for h in ((c, f"u {c}") if c in COMPUTED else (c,))]
+    shown = frame.iloc[order][headings].reset_index(drop=True)
+    return shown.rename(columns={c: c.replace("[m]", f"[{unit}]") for c in DEPTH_COLUMNS})
+
+
+def _latest_text(frame: pd.DataFrame, by: str, column: str) -> dict[int, str]:
+    return {int(i): v or "" for i, v in zip(frame[by], frame[column], strict=True)}
+
+
+def _facts(
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: int,
+    well_facts: pd.DataFrame,
+    stored: Mapping[str, str],
+) -> pd.DataFrame:
+    """What is registered of each plug of a well: depth in metres on its own basis."""
+    ids = plugs_of_well(identities, well)
+    plugs = store.in_force(connection, "plugs", ids)
+    descriptions = store.in_force(connection, "descriptions", ids)
+    runs = store.in_force(
+        connection, "core runs", [n for n, o in identities.owners["run"].items() if o == well], "run_id"
+    )
+    guns = [n for n, o in identities.owners["gun_run"].items() if o == well]
+    shots = store.in_force(connection, "sidewall shots", guns, "gun_run_id")
+    lithology = _latest_text(descriptions, "plug_id", "lithology")
+    of_shot = {
+        (int(g), s.casefold()): (t, b)
+        for g, s, t, b in zip(
+            shots["gun_run_id"], shots["shot"], shots["tool"], shots["depth_basis"], strict=True
+        )
+    }
+    laboratory = lab_settings.value(stored, "laboratory name")
+    if len(well_facts) and not pd.isna(well_facts["job_id"].iloc[-1]):
+        jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
+        laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
+    rows: list[dict[str, Any]] = []
+    for plug in plugs.to_dict("records"):
+        source, basis, run = plug["from"], "driller", ""
+        if source == "sidewall":
+            gun = None if pd.isna(plug["gun_run_id"]) else int(plug["gun_run_id"])
+            tool, basis = of_shot.get((gun or 0, (plug["shot"] or "").casefold()), ("", "log"))
+            source = f"{tool} sidewall" if tool else "sidewall, tool not recorded"
+            run = identities.name("gun run", gun) if gun is not None else ""
+        elif not pd.isna(plug["run_id"]):
+            run = identities.name("run", int(plug["run_id"]))
+        else:
+            run = _run_at(runs, plug["depth_m"], identities)
+        rows.append(
+            {
+                "plug_id": int(plug["plug_id"]),
+                "well": identities.name("well", well),
+                "plug": identities.name("plug", int(plug["plug_id"])),
+                "source": source,
+                "laboratory": laboratory,
+                "run": run,
+                "depth [m]": plug["depth_m"],
+                "depth basis": basis,
+                "orientation": plug["orientation"] or "",
+                "facies": plug["facies"] or "",
+                "lithology": lithology.get(int(plug["plug_id"]), ""),
+            }
+        )
+    columns = ["plug_id", *(c for c in COLUMNS[:11])]
+    return pd.DataFrame(rows, columns=columns).astype({"depth [m]": "float64", "log depth [m]": "float64"})
+
+
+def _run_at(runs: pd.DataFrame, depth_m: float, identities: store.Identities) -> str:
+    inside = runs[(runs["top_depth_m"] <= depth_m) & (depth_m <= runs["base_depth_m"])]
+    return identities.name("run", int(inside["run_id"].iloc[0])) if len(inside) == 1 else ""
+
+
+def _place(frame: pd.DataFrame, asked: str) -> None:
+    """Depths on the basis asked for where they are known on it, else on the plug's own."""
+    own_log = (frame["depth basis"] == "log").to_numpy()
+    frame["log depth [m]"] = np.where(own_log, frame["depth [m]"], np.nan)
+    if asked == "log":
+        known = frame["log depth [m]"].notna().to_numpy()
+        frame["depth [m]"] = np.where(known, frame["log depth [m]"], frame["depth [m]"])
+        frame["depth basis"] = np.where(known, "log", frame["depth basis"])
+
+
+def _add_results(
+    frame: pd.DataFrame, connection: sa.Connection, stored: Mapping[str, str], stress_mpa: float | None
+) -> None:
+    ids = frame["plug_id"].to_numpy(dtype=np.int64)
+    results = store.results(connection, set(ids.tolist()))
+    place = pd.Series(np.arange(len(ids)), index=ids)
+    results = results.assign(place=place.reindex(results["plug_id"]).to_numpy())
+    for column in COLUMNS[11:]:
+        frame[column] = "" if column in TEXT_COLUMNS else np.nan
+    for column in COMPUTED:
+        frame[f"u {column}"] = np.nan
+    frame["crush verdict"] = np.where(frame["source"] == "percussion sidewall", "not assessed", "")
+    frame["status"] = "computed"
+    doubts: list[dict[str, None]] = [{} for _ in range(len(frame))]
+    reasons: list[dict[str, list[str]]] = [{} for _ in range(len(frame))]
+    for quantity in (*_VOLUMES, *_SATURATIONS):
+        candidates = results[results["quantity"] == quantity]
+        chosen = _lowest_stress(
+            candidates, None if quantity in {"grain volume", "dry mass", "grain density"} else stress_mpa
+        )
+        _put(frame, chosen, quantity, doubts, reasons)
+        if quantity == "porosity":
+            there = chosen[chosen["value"].notna()]
+            at = there["place"].to_numpy(dtype=np.intp)
+            _set(frame, "porosity route", at, there["basis"].to_numpy())
+            _set(frame, "porosity stress [MPa]", at, there["stress_mpa"].to_numpy())
+    _add_permeability(frame, results, stored, stress_mpa, doubts, reasons)
+    frame["flags"] = [_joined(d, r) for d, r in zip(doubts, reasons, strict=True)]
+
+
+def _set(frame: pd.DataFrame, column: str, at: NDArray[np.intp], values: Any) -> None:
+    array = frame[column].to_numpy(copy=True)
+    array[at] = values
+    frame[column] = array
+
+
+def _lowest_stress(candidates: pd.DataFrame, stress_mpa: float | None) -> pd.DataFrame:
+    """One row a plug: at the stress asked for, else the lowest at which there is a value."""
+    rows = candidates.assign(missing=candidates["value"].isna())
+    if stress_mpa is not None:
+        rows = rows[(rows["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)]
+    return rows.sort_values(["place", "missing", "stress_mpa"], kind="stable").drop_duplicates("place")
+
+
+def _put(
+    frame: pd.DataFrame,
+    chosen: pd.DataFrame,
+    quantity: str,
+    doubts: list[dict[str, None]],
+    reasons: list[dict[str, list[str]]],
+) -> None:
+    column = RESULTS[quantity].stored_heading
+    at = chosen["place"].to_numpy(dtype=np.intp)
+    _set(frame, column, at, chosen["value"].to_numpy())
+    _set(frame, f"u {column}", at, chosen["uncertainty"].to_numpy())
+    for place, flags, reason in zip(at, chosen["flags"], chosen["reason"], strict=True):
+        for flag in flags.split("; ") if flags else ():
+            doubts[place][flag] = None
+        if reason and (quantity in _REASONED or quantity in _SATURATIONS):
+            reasons[place].setdefault(reason, []).append(quantity)
+
+
+def _joined(doubts: Mapping[str, None], reasons: Mapping[str, Sequence[str]]) -> str:
+    parts = list(doubts)
+    for reason, quantities in reasons.items():
+        names = list(quantities)
+        if set(_SATURATIONS) <= set(names):
+            names = [n for n in names if n not in _SATURATIONS] + ["saturations"]
+        parts.append(f"{', '.join(names)}: {reason}")
+    return "; ".join(parts)
+
+
+def _add_permeability(
+    frame: pd.DataFrame,
+    results: pd.DataFrame,
+    stored: Mapping[str, str],
+    stress_mpa: float | None,
+    doubts: list[dict[str, None]],
+    reasons: list[dict[str, list[str]]],
+) -> None:
+    """Klinkenberg permeability of the line chosen for each plug, with the gas step that goes with it.
+
+    Chosen first by stress, then along the plug before across it, regressed before reported before
+    estimated, nitrogen before air before helium.
+    """
+    rank_direction = {d: i for i, d in enumerate(("", *DIRECTIONS))}
+    rank_basis = {"measured": 0, "reported": 1, "estimated": 2}
+    rank_gas = {g: i for i, g in enumerate(("nitrogen", "air", "helium", "reported"))}
+    k = results[results["quantity"] == "klinkenberg permeability"]
+    slips = results[results["quantity"] == "slip factor"]
+    key = ["place", "direction", "stress_mpa", "step"]
+    slips = slips.set_index(key)[["value", "uncertainty", "basis"]].add_prefix("slip_")
+    k = k.join(slips, on=key)
+    k = k.assign(
+        missing=k["value"].isna(),
+        by_direction=k["direction"].map(rank_direction).fillna(9),
+        by_basis=k["slip_basis"].map(rank_basis).fillna(1),
+        by_gas=k["step"].map(rank_gas).fillna(9),
+    )
+    if stress_mpa is not None:
+        k = k[(k["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)]
+    k = k.sort_values(["place", "missing", "stress_mpa", "by_direction", "by_basis", "by_gas"], kind="stable")
+    k = k.drop_duplicates("place")
+    _put(frame, k, "klinkenberg permeability", doubts, reasons)
+    there = k[k["value"].notna()]
+    at = there["place"].to_numpy(dtype=np.intp)
+    _set(frame, "slip factor [kPa]", at, there["slip_value"].to_numpy())
+    _set(frame, "u slip factor [kPa]", at, there["slip_uncertainty"].to_numpy())
+    slip_there = there["slip_value"].notna().to_numpy()
+    from_gas = there["flags"].str.contains("slip estimated").to_numpy(dtype=np.bool_)
+    basis = np.where(
+        slip_there, there["slip_basis"].fillna(""), np.where(from_gas, "estimated", there["basis"])
+    )
+    _set(frame, "slip basis", at, basis)
+    reported = (there["step"] == REPORTED).to_numpy()
+    _set(frame, "permeability basis", at, np.where(reported, "reported", "measured"))
+    stated = ~there["flags"].str.contains(STRESS_NOT_STATED, regex=False).to_numpy(dtype=np.bool_)
+    _set(frame, "permeability stress [MPa]", at, np.where(stated, there["stress_mpa"], np.nan))
+    _add_step(frame, results, k, lab_settings.number(stored, "reporting mean pressure"), stress_mpa, doubts)
+
+
+def _add_step(
+    frame: pd.DataFrame,
+    results: pd.DataFrame,
+    lines: pd.DataFrame,
+    reporting_kpa: float,
+    stress_mpa: float | None,
+    doubts: list[dict[str, None]],
+) -> None:
+    """The gas permeability whose mean pressure is nearest the reporting one, of the line that was chosen."""
+    key = ["place", "direction", "stress_mpa", "step"]
+    steps = results[(results["quantity"] == "gas permeability") & results["value"].notna()]
+    pressure = results[results["quantity"] == "mean pressure"].set_index(key)["value"].rename("pressure")
+    steps = steps.join(pressure, on=key)
+    line = lines[lines["value"].notna()].set_index("place")[["direction", "stress_mpa", "step"]]
+    steps = steps.join(line.add_prefix("line_"), on="place")
+    own_line = steps["line_stress_mpa"].isna() | (
+        (steps["direction"] == steps["line_direction"]) & (steps["stress_mpa"] == steps["line_stress_mpa"])
+    )
+    same_gas = (
+        steps["line_step"].isna() | (steps["basis"] == steps["line_step"]) | ~steps["line_step"].isin(GASES)
+    )
+    if stress_mpa is not None:
+        own_line &= (steps["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)
+    steps = steps[own_line & same_gas]
+    steps = steps.assign(away=(steps["pressure"] - reporting_kpa).abs().fillna(np.inf))
+    steps = steps.sort_values(["place", "stress_mpa", "away", "step"], kind="stable").drop_duplicates("place")
+    at = steps["place"].to_numpy(dtype=np.intp)
+    _set(frame, "gas permeability [mD]", at, steps["value"].to_numpy())
+    _set(frame, "u gas permeability [mD]", at, steps["uncertainty"].to_numpy())
+    _set(frame, "mean pressure [kPa]", at, steps["pressure"].to_numpy())
+    _set(frame, "gas", at, steps["basis"].to_numpy())
+    for place, flags in zip(at, steps["flags"], strict=True):
+        for flag in flags.split("; ") if flags else ():
+            doubts[place][flag] = None

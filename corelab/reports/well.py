@@ -1,0 +1,179 @@
+"""Gathering what a partner receives of one well."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping
+from typing import Any
+
+import pandas as pd
+import sqlalchemy as sa
+
+from corelab.bench import settings as lab_settings
+from corelab.interval import life, recovery, select
+from corelab.records import history, store
+from corelab.reports.workbook import WellReport
+from corelab.sheets import SHEETS
+from corelab.sheets.readings import READINGS
+from corelab.version import __version__
+
+
+def report(
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: str,
+    *,
+    person: str,
+    recipient: str = "",
+    filters: select.Filters | None = None,
+) -> WellReport:
+    """Everything that the workbook of a well shows, as the record stands now."""
+    number = select.well_id(identities, well)
+    filters = filters or select.Filters()
+    stored = store.settings(connection)
+    facts = store.in_force(connection, "wells", [number], by="well_id")
+    fact = _last(facts)
+    unit = select.depth_unit(facts, stored, filters.unit)
+    results = select.interval(connection, identities, well, filters)
+    plug_ids = select.plugs_of_well(identities, number)
+    entries = life.entries_of_plugs(connection, plug_ids, in_force_only=True)
+    runs = recovery.core_runs(connection, identities, number, unit)
+    shots = recovery.shots(connection, identities, number)
+    used = used_methods(connection, plug_ids)
+    remarks = [
+        "The results hold for the samples tested, as they were received.",
+        "A value below or above a limit is the limit itself, and says so in its note.",
+        "Klinkenberg permeability is the limit at infinite mean pressure; where it is estimated from a "
+        "published law, the note says so.",
+    ]
+    if (results["source"] == "percussion sidewall").any():
+        remarks.append(
+            "Percussion sidewall plugs: the impact of the bullet can have changed porosity and permeability; "
+            "lithology and saturations stay useful (common practice)."
+        )
+    return WellReport(
+        well=identities.name("well", number),
+        cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person),
+        core_runs=runs.iloc[:-1],  # the workbook makes its own totals
+        shots=shots,
+        results=results,
+        methods=used,
+        provenance=_provenance(entries, identities),
+        cautions=_cautions(entries),
+        remarks=remarks,
+        recipient=recipient,
+    )
+
+
+def _cover(
+    connection: sa.Connection,
+    identities: store.Identities,
+    number: int,
+    fact: Mapping[str, Any],
+    stored: Mapping[str, str],
+    unit: str,
+    runs: pd.DataFrame,
+    results: pd.DataFrame,
+    person: str,
+) -> dict[str, str | float | None]:
+    job: dict[str, Any] = {}
+    job_name = ""
+    if fact and not pd.isna(fact.get("job_id")):
+        job_name = identities.name("job", int(fact["job_id"]))
+        jobs = store.in_force(connection, "jobs", [int(fact["job_id"])], by="job_id")
+        job = _last(jobs)
+    cored = ""
+    if len(runs):
+        top, base = runs[f"top depth [{unit}]"].iloc[-1], runs[f"base depth [{unit}]"].iloc[-1]
+        cored = f"{top:.2f} to {base:.2f} {unit}, driller's depth"
+    bases = sorted({b for b in results["depth basis"] if b})
+    return {
+        "well": identities.name("well", number),
+        "field": fact.get("field"),
+        "country": fact.get("country"),
+        "unique well identifier": fact.get("unique_well_identifier"),
+        "job": job_name,
+        "client": job.get("client"),
+        "partners": job.get("partners"),
+        "report number": job.get("report_number"),
+        "laboratory": job.get("laboratory") or lab_settings.value(stored, "laboratory name"),
+        "cored interval": cored,
+        "depth unit": unit,
+        "depth basis": ", ".join(f"{b}'s depth" if b == "driller" else f"{b} depth" for b in bases),
+        "depth datum": fact.get("depth_datum"),
+        "units": "as the headings say; porosity and saturations as fractions, permeability in millidarcy",
+        "results": "at the lowest net confining stress measured; saturations of the ambient pore volume",
+        "written on": history.now_utc()[:16].replace("T", " ") + " UTC",
+        "written by": person,
+        "program": f"corelab {__version__}",
+        "seal": history.last_seal(connection),
+    }
+
+
+def _last(frame: pd.DataFrame) -> dict[str, Any]:
+    """The last row of a frame as a mapping; empty where there is none."""
+    return {str(k): v for k, v in frame.iloc[-1].to_dict().items()} if len(frame) else {}
+
+
+def used_methods(connection: sa.Connection, plug_ids: list[int]) -> list[dict[str, str]]:
+    """The calculations behind the stored results of these plugs, in the words of the code."""
+    from corelab.science.catalogue import formulas
+
+    known = formulas()
+    methods = [
+        m for text in store.results(connection, plug_ids)["method"].unique() for m in text.split(" + ")
+    ]
+    return [described(known[key]) for key in sorted(set(methods)) if key in known]
+
+
+def described(formula: Any) -> dict[str, str]:
+    """One calculation in words: what `methods` shows and the workbook prints."""
+    symbols = [*formula.inputs, *formula.outputs]
+    return {
+        "key": formula.key,
+        "version": str(formula.version),
+        "title": formula.title,
+        "equation": formula.equation,
+        "symbols": "; ".join(f"{s.symbol} {s.meaning}" + (f" [{s.unit}]" if s.unit else "") for s in symbols),
+        "valid": formula.valid,
+        "source": formula.source,
+        "tested": formula.tested,
+    }
+
+
+def _provenance(entries: pd.DataFrame, identities: store.Identities) -> pd.DataFrame:
+    readings = {sheet.kind for sheet in READINGS}
+    rows = [
+        {
+            "plug": identities.name("plug", int(e["plug_id"])),
+            "kind": e["kind"],
+            "reading": int(e["number"]),
+            "measured on": e["measured_on"] or "",
+            "measured by": e["measured_by"] or "",
+            "instrument": ""
+            if pd.isna(e["instrument_id"])
+            else identities.name("instrument", int(e["instrument_id"])),
+            "entered on": str(e["at"])[:16].replace("T", " "),
+            "entered by": e["person"],
+            "file": e["file"],
+            "sheet": e["sheet"],
+            "row": None if pd.isna(e["row"]) else int(e["row"]),
+            "entry": ", ".join(
+                f"{h} {v}" for h, v in json.loads(e["entered"]).items() if h not in {"well", "plug"}
+            ),
+        }
+        for e in (entries.to_dict("records") if len(entries) else [])
+        if e["kind"] in readings
+    ]
+    columns = [
+        "plug", "kind", "reading", "measured on", "measured by", "instrument",
+        "entered on", "entered by", "file", "sheet", "row", "entry",
+    ]  # fmt: skip
+    rows.sort(key=lambda r: (select.natural_key(str(r["plug"])), int(str(r["reading"]))))
+    return pd.DataFrame(rows, columns=columns)
+
+
+def _cautions(entries: pd.DataFrame) -> list[str]:
+    kinds = set(entries["kind"]) if len(entries) else set()
+    found = {sheet.kind: sheet.caution for sheet in SHEETS.values() if sheet.kind in kinds and sheet.caution}
+    return [f"{SHEETS[kind].title}: {caution}" for kind, caution in found.items()]
