@@ -58,15 +58,9 @@ def day(start: str, after: int = 0) -> str:
 
 # --------------------------------------------------------------------------------------------------- fluids
 
-
-def water_density(degc: float) -> float:
-    return float(np.interp(degc, [15, 20, 22, 25, 30], [0.999103, 0.998207, 0.997774, 0.997048, 0.995650]))
-
-
-def mercury_density(degc: float) -> float:
-    return float(np.interp(degc, [10, 20, 25, 30], [13.5704, 13.5458, 13.5336, 13.5213]))
-
-
+# Density in g/cm3 against degC.
+WATER = [15, 20, 22, 25, 30], [0.999103, 0.998207, 0.997774, 0.997048, 0.995650]
+MERCURY = [10, 20, 25, 30], [13.5704, 13.5458, 13.5336, 13.5213]
 #: Sodium chloride brine at 20 degC, between 6 % (1.0413) and 8 % (1.0559).
 BRINE = round(float(np.interp(SALINITY, [60, 80], [1.0413, 1.0559])), 4)
 
@@ -76,14 +70,10 @@ def viscosity(gas: str, degc: float, mean_kpa: np.ndarray) -> np.ndarray:
     return np.asarray(PropsSI("V", "T", degc + 273.15, "P", mean_kpa * 1e3, gas))
 
 
-def slip_of(gas: str) -> float:
-    """Slip in a gas over that in nitrogen: it goes with viscosity and the root of the molar mass."""
-    at = np.array([ATM])
-    ratio = viscosity(gas, 22, at)[0] / viscosity("nitrogen", 22, at)[0]
-    return float(ratio * (PropsSI("M", "nitrogen") / PropsSI("M", gas)) ** 0.5)
-
-
-SLIP = {"nitrogen": 1.0, "helium": slip_of("helium")}
+# Slip in a gas over that in nitrogen: it goes with viscosity and the root of the molar mass.
+slips = {gas: float(viscosity(gas, 22, np.array(ATM))) * PropsSI("M", gas) ** -0.5
+         for gas in ("nitrogen", "helium")}
+SLIP = {gas: slip / slips["nitrogen"] for gas, slip in slips.items()}
 
 # ---------------------------------------------------------------------------------------------- instruments
 
@@ -145,26 +135,22 @@ TABLE: tuple[tuple[str, tuple[Any, ...], tuple[Any, ...]], ...] = (
 FACIES: dict[str, Row] = {name: dict(zip(NUMBERS + WORDS, n + w, strict=True)) for name, n, w in TABLE}
 CHANNEL, SHORE, MIXED, TIGHT = FACIES
 # Logged interval, contact of oil and water, bases of the layers: log depth in the unit of the well.
+# The cores lie at log depths 2441.4-2468.8 m and 7902.5-7931.5 ft.
 WELLS: dict[str, Row] = {
     "QB-1": {
         "unit": "m", "scale": 1.0, "start": 2390.0, "stop": 2515.0, "step": 0.1524, "contact": 2464.5,
-        "layers": [(2396.0, MIXED), (2403.5, SHORE), (2404.8, TIGHT), (2413.0, MIXED), (2419.5, SHORE),
-                   (2427.0, MIXED), (2430.0, SHORE), (2435.0, MIXED), (2436.2, TIGHT),
-                   # the core starts here
-                   (2443.5, MIXED), (2450.0, SHORE), (2451.4, TIGHT), (2454.7, SHORE), (2456.5, MIXED),
-                   (2462.0, CHANNEL), (2462.9, TIGHT), (2467.1, CHANNEL), (2472.5, MIXED),
-                   # and ends above here
-                   (2478.5, CHANNEL), (2479.4, TIGHT), (2483.0, CHANNEL), (2492.0, MIXED), (2497.5, SHORE),
-                   (2505.0, MIXED), (2508.0, SHORE), (9999, MIXED)]},
+        "layers": [(2396, MIXED), (2399, SHORE), (2400.2, TIGHT), (2403.5, SHORE), (2413, MIXED),
+                   (2419.5, SHORE), (2427, MIXED), (2430, SHORE), (2435, MIXED), (2436.2, TIGHT),
+                   (2443.5, MIXED), (2450, SHORE), (2451.4, TIGHT), (2454.7, SHORE), (2456.5, MIXED),
+                   (2462, CHANNEL), (2462.9, TIGHT), (2467.1, CHANNEL), (2470.8, MIXED), (2477, CHANNEL),
+                   (2478.6, MIXED), (2480, TIGHT), (2485, SHORE), (2492, MIXED), (2497.5, SHORE),
+                   (2505, MIXED), (2508, SHORE), (9999, MIXED)]},
     "QB-2": {
         "unit": "ft", "scale": FOOT, "start": 7800.0, "stop": 8050.0, "step": 0.5, "contact": 7926.5,
         "layers": [(7826, MIXED), (7841, SHORE), (7858, MIXED), (7862, TIGHT), (7875, MIXED), (7889, SHORE),
-                   # the core starts here
                    (7905.4, MIXED), (7915.4, SHORE), (7917.5, TIGHT), (7920, MIXED), (7930, CHANNEL),
-                   (7944, MIXED),
-                   # and ends above here
-                   (7968, CHANNEL), (7985, MIXED), (8001, SHORE), (8004, TIGHT), (8019, MIXED),
-                   (8031, CHANNEL), (99999, MIXED)]},
+                   (7944, MIXED), (7968, CHANNEL), (7985, MIXED), (8001, SHORE), (8004, TIGHT),
+                   (8019, MIXED), (8031, CHANNEL), (9999, MIXED)]},
 }
 # A core barrel holds about 9 m or 30 ft (common practice).
 # well, run, top, base, recovered (in the unit of the well), shift to log depth [m], cut on
@@ -175,7 +161,7 @@ RUNS = [
     ("QB-2", "1", 7905.0, 7934.0, 28.6, -0.76, "2025-12-09"),
 ]
 # Sections no plug was cut from, by the depth of their top.
-UNCUT = {2453.0: "preserved", 2460.0: "rubble"}
+UNCUT = {2445.0: "preserved", 2463.0: "rubble"}
 GRID = 0.02  # m
 
 
@@ -198,11 +184,15 @@ for well in WELLS.values():
          for key in ("phi", "sd", "gr", "gr_sd", "rho")}
     phi = f["phi"] + f["sd"] * np.clip(wander(z.size, 0.45), -2.2, 2.2)
     gamma = f["gr"] + f["gr_sd"] * (0.8 * wander(z.size, 0.35) + 0.6 * wander(z.size, 1.2))
-    well |= {"z": z, "porosity": phi, "gamma": np.maximum(gamma, 8), "rho": f["rho"], "shale": f["gr"] > 80}
+    well |= {"z": z, "porosity": phi, "gamma": np.maximum(gamma, 8), "rho": f["rho"], "shale": f["gr"] > 80,
+             "facies": np.array([name for _, name in well["layers"]])[layer]}
 
 
-def facies_at(well: str, log_m: float) -> str:
-    return str(next(name for base, name in WELLS[well]["layers"] if log_m <= base * WELLS[well]["scale"]))
+def rock_at(well: str, log_m: float) -> tuple[str, float]:
+    """Facies and porosity."""
+    w = WELLS[well]
+    at = round((log_m - w["z"][0]) / GRID)
+    return str(w["facies"][at]), float(w["porosity"][at])
 
 
 def slip_nitrogen(k_md: float) -> float:
@@ -215,9 +205,9 @@ plugs: list[Row] = []
 
 def draw(well: str, name: str, source: str, log_m: float, diameter: float, length: float) -> Row:
     """The truth of one plug, lengths in cm; how it was measured (`…_by`) is added as it is measured."""
-    kind, w = facies_at(well, log_m), WELLS[well]
+    (kind, porosity), w = rock_at(well, log_m), WELLS[well]
     f, above = FACIES[kind], log_m < w["contact"] * w["scale"]
-    porosity = max(0.015, float(np.interp(log_m, w["z"], w["porosity"])) + rng.normal(0, 0.004))
+    porosity = max(0.015, porosity + rng.normal(0, 0.004))
     k = 10 ** (f["a"] + f["b"] * porosity + rng.normal(0, f["scatter"]))
     water = min(0.9, f["water"] * rng.uniform(0.85, 1.15)) if above else rng.uniform(0.84, 0.92)
     oil = (1 - water) * rng.uniform(0.68, 0.82) if above else rng.uniform(0.025, 0.045)
@@ -288,22 +278,21 @@ for p in [p for p in core_1 if p["facies"] == SHORE and not p["companion"]][5:18
 GUN, DRILLED = "G1", "R1"
 OUTCOMES = {4: "misfired", 19: "misfired", 11: "lost", 8: "empty", 21: "empty", 7: "partial", 15: "partial"}
 IMPACTS = {
-    CHANNEL: ["compacted", "compacted", "none", "loosened", "compacted", "none", "compacted", "loosened"],
-    SHORE: ["shattered", "none", "shattered", "none", "shattered", "none"],
-    TIGHT: ["shattered"], MIXED: ["none"],
-}
+    CHANNEL: ("compacted", "compacted", "none", "loosened", "compacted", "none", "compacted", "loosened"),
+    SHORE: ("shattered", "none"), TIGHT: ("shattered",), MIXED: ("none",)}
 # What impact adds to porosity, and its factor on permeability: ranges.
 CHANGES = {"compacted": ((-0.055, -0.025), (0.08, 0.35)), "loosened": ((0.025, 0.05), (1.0, 1.6)),
            "shattered": ((0.02, 0.04), (8, 30)), "none": ((0, 0), (1, 1))}
+# Above, in and below the core, some side by side, some where core was lost.
 SHOTS = [2402.0, 2418.0, 2428.5, 2438.2, 2442.6, 2444.2, 2445.5, 2446.8, 2448.0, 2450.6, 2452.1, 2453.0,
-         2454.2, 2455.6, 2457.2, 2458.4, 2459.6, 2461.0, 2462.4, 2463.6, 2464.9, 2466.2, 2474.5, 2481.0]
+         2455.6, 2456.9, 2457.7, 2458.4, 2459.6, 2461.0, 2462.4, 2463.6, 2464.9, 2466.2, 2474.5, 2476.3]
 STATIONS = [2402.2, 2418.1, 2442.7, 2444.3, 2451.0, 2453.1, 2458.5, 2459.7, 2463.7, 2474.6]
 CORE, SIDE, VOLUMES, FLOW = "QB-1 core.xlsx", "QB-1 sidewall.xlsx", "QB-1 volumes.xlsx", "QB-1 flow.xlsx"
 
 
 def shot(gun: str, number: int, z: float, tool: str, outcome: str, shape: tuple[float, float]) -> Row | None:
     """Puts the shot on its sheet and, if rock came up, draws the plug."""
-    got, hard = outcome in ("recovered", "partial"), facies_at("QB-1", z) in (SHORE, TIGHT)
+    got, hard = outcome in ("recovered", "partial"), rock_at("QB-1", z)[0] in (SHORE, TIGHT)
     put(SIDE, "sidewall shots", {
         "well": "QB-1", "gun run": gun, "shot": str(number), "depth [m]": z, "depth basis": "log",
         "tool": tool, "outcome": outcome, "recovered length [mm]": round(shape[1] * 10 + 8) if got else None,
@@ -316,17 +305,16 @@ def shot(gun: str, number: int, z: float, tool: str, outcome: str, shape: tuple[
     return p
 
 
-met: dict[str, int] = defaultdict(int)
+in_turn = {facies: itertools.cycle(impacts) for facies, impacts in IMPACTS.items()}
 for n, at in enumerate(SHOTS, 1):
     outcome = OUTCOMES.get(n, "recovered")
     size = (rng.normal(2.40, 0.03), 1.2 if outcome == "partial" else rng.uniform(2.3, 3.1))
     if hit := shot(GUN, n, at, "percussion", outcome, size):
         p = hit
-        choices = IMPACTS[p["facies"]]
-        p["impact"] = choices[met[p["facies"]] % len(choices)]
-        met[p["facies"]] += 1
-        p["porosity"] += rng.uniform(*CHANGES[p["impact"]][0])
-        p["k"] *= rng.uniform(*CHANGES[p["impact"]][1])
+        p["impact"] = next(in_turn[p["facies"]])
+        added, factor = CHANGES[p["impact"]]
+        p["porosity"] += rng.uniform(*added)
+        p["k"] *= rng.uniform(*factor)
         p["b"] = slip_nitrogen(p["k"])
         p["sw"] = rng.uniform(0.58, 0.72) if p["above"] else rng.uniform(0.85, 0.92)  # flushed by filtrate
         p["so"] = (1 - p["sw"]) * rng.uniform(0.3, 0.5) if p["above"] else 0.03
@@ -413,15 +401,15 @@ for p in plugs:
         "from": "sidewall", "gun run": p["run"], "shot": p["shot"], "depth [m]": p["depth"],
         "facies": p["facies"], "taken on": "2025-11-12"}, p)
     condition = LOOKS.get(p["impact"], "cracked" if p["fractured"] else "short" if p["short"] else "intact")
-    row = {"lithology": f["lithology"]}
     if p["well"] == "QB-2":
-        row |= {"grain size [mm]": round(f["mm"] * 2 ** rng.normal(0, 0.15), 3),
-                "sorting [phi]": round(f["sigma"] * rng.uniform(0.9, 1.1), 2)}
+        grains = {"grain size [mm]": round(f["mm"] * 2 ** rng.normal(0, 0.15), 3),
+                  "sorting [phi]": round(f["sigma"] * rng.uniform(0.9, 1.1), 2)}
     else:
-        row |= {"grain size class": f["size"], "sorting class": f["sorting"], "sorting scale": "folk"}
+        grains = {"grain size class": f["size"], "sorting class": f["sorting"], "sorting scale": "folk"}
     stained = p["above"] and p["facies"] in (CHANNEL, SHORE)
-    row |= {key: f[key] for key in ("roundness", "firmness", "cement", "accessories", "colour")}
-    put(file, "descriptions", row | {
+    put(file, "descriptions", {
+        "lithology": f["lithology"], **grains,
+        **{key: f[key] for key in ("roundness", "firmness", "cement", "accessories", "colour")},
         "stain": "even, brown" if stained else None, "fluorescence": "bright yellow" if stained else None,
         "condition": condition + (", short" if p["short"] and condition != "short" else ""),
         "described by": GEOLOGIST,
@@ -507,7 +495,7 @@ def grain_volume(p: Row, bench: str, on: str, times: int = 1, billet: str = "") 
 
 def mercury(p: Row, bench: str, on: str) -> None:
     degc = round(days[on].degc, 1)
-    displaced = (p["bulk"] + p["jacket_cm3"]) * mercury_density(degc)
+    displaced = (p["bulk"] + p["jacket_cm3"]) * float(np.interp(degc, *MERCURY))
     put(BENCHES[bench][0], "immersion", {
         "liquid": "mercury", "mass displaced [g]": read("BAL-HG", "mass", displaced, 2),
         "temperature [degC]": degc, "balance": "BAL-HG"}, p, on, 1)
@@ -530,7 +518,7 @@ def distil(p: Row, bench: str, on: str, salt: str) -> None:
     salt_g, trap, oil = brine_g * SALINITY / 1000, round(rng.uniform(21, 25), 1), OIL[p["well"]]
     weigh(p, bench, "as received", p["dry"] + brine_g + p["so"] * p["pore"] * oil, on)
     p |= {"s_by": "distillation", "salt_g": salt_g if salt == "left" else 0.0}
-    row = {"water volume [cm3]": read("TRAP-1", "volume", (brine_g - salt_g) / water_density(trap), 2)}
+    row = {"water volume [cm3]": read("TRAP-1", "volume", (brine_g - salt_g) / np.interp(trap, *WATER), 2)}
     if bench == "QB-2":
         row |= {"trap temperature [degF]": round(trap * 1.8 + 32, 1), "brine salinity [ppm]": SALINITY * 1000}
     else:
@@ -617,7 +605,7 @@ for i, p in enumerate(side):
 
 truth_stress: list[Row] = []
 sands = [p for p in core_1 if p["facies"] in (CHANNEL, SHORE) and not p["salt_g"] and not p["screens"]]
-for p in sands[3::8][:5]:
+for p in sands[3::7][:5]:
     for psi in (400, 2000, 4000):
         pore = p["pore"] * (1 - 0.012 * np.log(1 + psi / 400))
         on, free = "2026-03-11", HOLDER[0] + pore
@@ -658,22 +646,19 @@ def gas_flow(p: Row, file: str, rig: str, on: str, steps: list[int], psi: float 
         degc = read(rig, "temperature", at.degc, 1)
         unit, per = {"GP-1": ("psi", PSI), "GP-2": ("atm", ATM), "GP-3": ("kPa", 1.0)}[rig]
         end, zero = ("psig", at.barometer) if rig == "GP-1" else (unit, 0.0)
-        shown = [read(rig, "pressure", kpa / per, 5) for kpa in (u - zero, u - d, d - zero)]
-        ends = {f"upstream pressure [{end}]": None if through else shown[0],
-                f"pressure difference [{unit}]": shown[1] if through else None,
-                f"downstream pressure [{end}]": shown[2] if through else None}
-        meter: Row
-        if rig == "GP-1":  # a bubble meter at the barometer
-            meter = {"flow rate [cm3/min]": read(rig, "flow rate", q * 60, 4), "temperature [degC]": degc}
-        elif rig == "GP-2":  # a mass flow meter that shows standard millilitres
-            normal = q * at.barometer / ATM * 293.15 / (at.degc + 273.15)
-            meter = {"flow rate [mL/min]": read(rig, "flow rate", normal * 60, 4), "flow basis": "standard",
-                     "temperature [degF]": round(degc * 1.8 + 32, 1)}
-        else:
-            meter = {"flow rate [cm3/s]": read(rig, "flow rate", q, 5), "temperature [degC]": degc}
+        ends = ({f"pressure difference [{unit}]": u - d, f"downstream pressure [{end}]": d - zero} if through
+                else {f"upstream pressure [{end}]": u - zero})
+        standard_per_actual = at.barometer / ATM * 293.15 / (at.degc + 273.15)
+        # A bubble meter at the barometer, a mass flow meter that shows standard millilitres.
+        meter, shows, decimals = {"GP-1": ("cm3/min", q * 60, 4), "GP-3": ("cm3/s", q, 5),
+                                  "GP-2": ("mL/min", q * standard_per_actual * 60, 4)}[rig]
+        warmth = ("degF", round(degc * 1.8 + 32, 1)) if rig == "GP-2" else ("degC", degc)
         put(file, "gas permeability", {
             "direction": "axial", "step": str(n), "net confining stress [psi]": psi,
-            "stress type": "hydrostatic" if psi else None, "gas": p["gas"], **ends, **meter,
+            "stress type": "hydrostatic" if psi else None, "gas": p["gas"],
+            **{name: read(rig, "pressure", kpa / per, 5) for name, kpa in ends.items()},
+            f"flow rate [{meter}]": read(rig, "flow rate", shows, decimals),
+            "flow basis": "standard" if rig == "GP-2" else None, f"temperature [{warmth[0]}]": warmth[1],
             "barometric pressure [kPa]": at.barometer_read, "permeameter": rig}, p, on, 1)
 
 

@@ -72,13 +72,20 @@ def make_engine(database: str) -> sa.Engine:
 def _postgresql_session(connection: Any, _record: object) -> None:
     with connection.cursor() as cursor:
         cursor.execute("SET TIME ZONE 'UTC'")
+        cursor.execute(f"SET lock_timeout = '{_WAIT_SECONDS}s'")
     connection.commit()
 
 
 def _sqlite_session(connection: Any, _record: object) -> None:
     connection.isolation_level = None  # we begin ourselves, see _sqlite_begin
-    for pragma in ("journal_mode=WAL", "synchronous=FULL", "foreign_keys=ON", "recursive_triggers=ON"):
+    for pragma in ("synchronous=FULL", "foreign_keys=ON", "recursive_triggers=ON"):
         connection.execute(f"PRAGMA {pragma}")
+
+
+def outside_transaction(connection: sa.Connection, pragma: str) -> None:
+    """Set what SQLite heeds only while no transaction is open: `connection` must not have begun."""
+    driver: Any = connection.connection.driver_connection
+    driver.execute(f"PRAGMA {pragma}")
 
 
 def _sqlite_begin(connection: sa.Connection) -> None:
@@ -136,7 +143,7 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
     except sa.exc.OperationalError as trouble:
         said = re.sub(r"\s+", " ", str(trouble.orig))
         where = engine.url.render_as_string(hide_password=True)
-        if "locked" in said:
+        if "locked" in said or "lock timeout" in said:
             hint = "another program is writing to it; try again in a moment"
         elif "full" in said or "No space" in said:
             hint = "the disk is full; make room and try again: nothing was written"

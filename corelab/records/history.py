@@ -203,13 +203,18 @@ def _digests_by_event(connection: sa.Connection, faults: list[str]) -> dict[int,
         for row in connection.execute(sa.select(table).order_by(table.c.id)).mappings():
             values = dict(row)
             own = {k: v for k, v in values.items() if k != "digest"}
-            if table is schema.entry:
-                kind, fields = typed.pop(values["id"], (values["kind"], {}))
-                if kind != values["kind"]:
-                    faults.append(f"entry {values['id']} is of kind {values['kind']}, its values of {kind}")
-                digest = entry_digest(own, values["kind"], fields)
-            else:
-                digest = row_digest(table.name, own)
+            try:
+                if table is schema.entry:
+                    kind, fields = typed.pop(values["id"], (values["kind"], {}))
+                    if kind != values["kind"]:
+                        faults.append(
+                            f"entry {values['id']} is of kind {values['kind']}, its values of {kind}"
+                        )
+                    digest = entry_digest(own, values["kind"], fields)
+                else:
+                    digest = row_digest(table.name, own)
+            except ValueError:  # an infinite number, or NaN, which the program never writes
+                digest = ""
             if digest != values["digest"]:
                 faults.append(f"row {values['id']} of {table.name} was altered")
             of_event.setdefault(values["event"], []).append(values["digest"])

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import sqlite3
-from contextlib import closing
+from collections.abc import Iterator
+from contextlib import closing, contextmanager
 from pathlib import Path
 
 import sqlalchemy as sa
@@ -11,6 +12,10 @@ import sqlalchemy as sa
 from corelab.errors import Unavailable
 from corelab.records import engine as engines
 from corelab.records import history, schema
+
+#: Tables by which a lab of whatever version is known; Alembic's own may be anybody's.
+_OF_A_LAB = {"alembic_version", "event", "entry"}
+_NEWER = "this lab was made by a newer corelab: install that version or a later one"
 
 
 def migrations_folder() -> Path:
@@ -30,14 +35,14 @@ def schema_version(connection: sa.Connection) -> str:
     Unavailable
         If the database belongs to something else.
     """
-    tables = sa.inspect(connection).get_table_names()
-    if "alembic_version" not in tables:
-        if tables:
-            raise Unavailable(
-                f"the database holds other tables ({', '.join(sorted(tables)[:5])} …) and no lab: give "
-                "corelab a database of its own"
-            )
+    tables = set(sa.inspect(connection).get_table_names())
+    if not tables:
         return ""
+    if not tables >= _OF_A_LAB:
+        named = ", ".join(sorted(tables - _OF_A_LAB)[:5])
+        raise Unavailable(
+            f"the database holds other tables ({named} …) and no lab: give corelab a database of its own"
+        )
     return connection.exec_driver_sql("SELECT version_num FROM alembic_version").scalar() or ""
 
 
@@ -50,7 +55,7 @@ def require_current(connection: sa.Connection) -> None:
         raise Unavailable("there is no lab in this database yet: run 'corelab setup' first")
     if version < schema.SCHEMA:
         raise Unavailable("this lab was made by an older corelab: run 'corelab setup' to bring it up to date")
-    raise Unavailable("this lab was made by a newer corelab: install that version or a later one")
+    raise Unavailable(_NEWER)
 
 
 def upgrade(engine: sa.Engine, target: str = "head") -> tuple[str, str, Path | None]:
@@ -61,20 +66,24 @@ def upgrade(engine: sa.Engine, target: str = "head") -> tuple[str, str, Path | N
     """
     from alembic import command
     from alembic.config import Config
+    from alembic.script import ScriptDirectory
 
     config = Config()
     config.set_main_option("script_location", str(migrations_folder()).replace("%", "%%"))
     config.set_main_option("path_separator", "os")
     file = engines.sqlite_file(engine.url)
     backup: Path | None = None
+    known = {script.revision for script in ScriptDirectory.from_config(config).walk_revisions()}
     with engines.trouble_named(engine), engine.connect() as connection:
-        if file is not None:
-            connection.exec_driver_sql("PRAGMA foreign_keys=OFF")
-            connection.rollback()
-        with connection.execution_options(corelab_mode="IMMEDIATE").begin():
+        with (
+            _foreign_keys_off(connection),
+            connection.execution_options(corelab_mode="IMMEDIATE").begin(),
+        ):
             if file is None:
                 connection.exec_driver_sql(f"SELECT pg_advisory_xact_lock({engines.WRITER_LOCK})")
             before = schema_version(connection)
+            if before and before not in known:
+                raise Unavailable(_NEWER)
             if file is not None and before and before != schema.SCHEMA:
                 backup = _copy(file, before)
             config.attributes["connection"] = connection
@@ -90,9 +99,22 @@ def upgrade(engine: sa.Engine, target: str = "head") -> tuple[str, str, Path | N
                         "nothing"
                     )
         if file is not None:
-            connection.exec_driver_sql("PRAGMA foreign_keys=ON")
-            connection.rollback()
+            # kept in the file, so that it is set only once the file is known for a lab
+            engines.outside_transaction(connection, "journal_mode=WAL")
     return before, after, backup
+
+
+@contextmanager
+def _foreign_keys_off(connection: sa.Connection) -> Iterator[None]:
+    """Tables can be rebuilt on SQLite under the rows that point at them; begin the transaction inside."""
+    if connection.dialect.name != "sqlite":
+        yield
+        return
+    engines.outside_transaction(connection, "foreign_keys=OFF")
+    try:
+        yield
+    finally:
+        engines.outside_transaction(connection, "foreign_keys=ON")
 
 
 def _copy(file: Path, version: str) -> Path:

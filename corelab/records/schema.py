@@ -161,10 +161,15 @@ def stored_columns(sheet: Sheet) -> tuple[Column, ...]:
     return tuple(c for c in sheet.columns if not (c.refers == "well" and tells_well))
 
 
-def _bounds(field: str, possible: Range) -> list[str]:
-    low, high = possible
-    parts = [f"{field} >= {low!r}"] if math.isfinite(low) else []
-    return parts + ([f"{field} <= {high!r}"] if math.isfinite(high) else [])
+_LARGEST = 1e300
+#: Nothing reads lower on a gauge than a vacuum does.
+_LOWEST_GAUGE_KPA = 120.0
+
+
+def _bounds(field: str, possible: Range) -> str:
+    """Both ends always: PostgreSQL sorts NaN above every number, so only an upper bound keeps it out."""
+    low, high = (end if math.isfinite(end) else math.copysign(_LARGEST, end) for end in possible)
+    return f"{field} >= {low!r} AND {field} <= {high!r}"
 
 
 def _quoted(field: str) -> str:
@@ -192,19 +197,21 @@ def _column_items(column: Column) -> list[sa.schema.SchemaItem]:
     items: list[sa.schema.SchemaItem] = []
     possible = column.quantity.possible if column.quantity else (-math.inf, math.inf)
     for index, field in enumerate(column.fields):
-        rule = " AND ".join(_bounds(field, possible))
+        rule = _bounds(field, possible)
         items.append(sa.Column(field, Real, nullable=not (required and index == 0)))
-        if rule and column.gauge_field:  # a gauge reads zero at the barometer; the sum is checked when read
-            rule = f"{column.gauge_field} = 1 OR ({rule})"
-        if rule:
-            items.append(_check(field, rule))
+        if column.gauge_field:  # a gauge reads zero at the barometer; the sum is checked when read
+            on_a_gauge = _bounds(field, (-_LOWEST_GAUGE_KPA, math.inf))
+            rule = f"({column.gauge_field} = 1 AND {on_a_gauge}) OR ({rule})"
+        items.append(_check(field, rule))
     if column.gauge_field:
         gauge = column.gauge_field
         items.append(sa.Column(gauge, sa.Integer, nullable=not required))
         items.append(_check(gauge, f"{gauge} IN (0, 1) AND ({gauge} IS NULL) = ({column.field} IS NULL)"))
     if column.limit_field:
         items.append(_text(column.limit_field, nullable=True))
-        items.append(_check(column.limit_field, f"{column.limit_field} IN ('below', 'above')"))
+        limit = column.limit_field
+        rule = f"{limit} IS NULL OR ({limit} IN ('below', 'above') AND {column.field} IS NOT NULL)"
+        items.append(_check(column.limit_field, rule))
     return items
 
 

@@ -186,9 +186,13 @@ def _insert(connection: sa.Connection, table: sa.Table, rows: Sequence[Mapping[s
     names = [c.name for c in table.c]
     columns = ", ".join(connection.dialect.identifier_preparer.quote(n) for n in names)
     if connection.dialect.name == "postgresql":
-        with connection.connection.cursor().copy(f"COPY {table.name} ({columns}) FROM STDIN") as copy:
-            for row in rows:
-                copy.write_row([row[n] for n in names])
+        statement, dbapi = f"COPY {table.name} ({columns}) FROM STDIN", connection.dialect.loaded_dbapi
+        try:
+            with connection.connection.cursor().copy(statement) as copy:
+                for row in rows:
+                    copy.write_row([row[n] for n in names])
+        except dbapi.Error as trouble:  # COPY goes past the library, which would have named it
+            raise sa.exc.DBAPIError.instance(statement, None, trouble, dbapi.Error, True) from trouble
         return
     marks = ", ".join("?" * len(names))
     connection.exec_driver_sql(

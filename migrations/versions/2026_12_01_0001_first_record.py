@@ -203,8 +203,13 @@ def upgrade() -> None:
         sa.CheckConstraint("length(certificate) > 0", name=op.f("ck_instruments_certificate")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_instruments_remarks")),
         sa.CheckConstraint("length(uncertainty_unit) > 0", name=op.f("ck_instruments_uncertainty_unit")),
-        sa.CheckConstraint("repeatability >= 0.0", name=op.f("ck_instruments_repeatability")),
-        sa.CheckConstraint("scale_uncertainty >= 0.0", name=op.f("ck_instruments_scale_uncertainty")),
+        sa.CheckConstraint(
+            "repeatability >= 0.0 AND repeatability <= 1e+300", name=op.f("ck_instruments_repeatability")
+        ),
+        sa.CheckConstraint(
+            "scale_uncertainty >= 0.0 AND scale_uncertainty <= 1e+300",
+            name=op.f("ck_instruments_scale_uncertainty"),
+        ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_instruments_id")),
         sa.ForeignKeyConstraint(
             ["instrument_id"], ["instrument.id"], name=op.f("fk_instruments_instrument_id")
@@ -303,19 +308,24 @@ def upgrade() -> None:
         ),
         sa.CheckConstraint("setup IN ('cup', 'holder')", name=op.f("ck_porosimeter_calibration_setup")),
         sa.CheckConstraint(
-            "barometric_pressure_kpa >= 40.0 AND barometric_pressure_kpa <= 120.0",
-            name=op.f("ck_porosimeter_calibration_barometric_pressure_kpa"),
+            "(expanded_pressure_gauge = 1 AND expanded_pressure_kpa >= -120.0 AND expanded_pressure_kpa <= 1e+300) OR (expanded_pressure_kpa >= 1e-12 AND expanded_pressure_kpa <= 1e+300)",
+            name=op.f("ck_porosimeter_calibration_expanded_pressure_kpa"),
         ),
         sa.CheckConstraint(
-            "expanded_pressure_gauge = 1 OR (expanded_pressure_kpa >= 1e-12)",
-            name=op.f("ck_porosimeter_calibration_expanded_pressure_kpa"),
+            "(reference_pressure_gauge = 1 AND reference_pressure_kpa >= -120.0 AND reference_pressure_kpa <= 1e+300) OR (reference_pressure_kpa >= 1e-12 AND reference_pressure_kpa <= 1e+300)",
+            name=op.f("ck_porosimeter_calibration_reference_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "barometric_pressure_kpa >= 40.0 AND barometric_pressure_kpa <= 120.0",
+            name=op.f("ck_porosimeter_calibration_barometric_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "expanded_pressure_gauge IN (0, 1) AND (expanded_pressure_gauge IS NULL) = (expanded_pressure_kpa IS NULL)",
             name=op.f("ck_porosimeter_calibration_expanded_pressure_gauge"),
         ),
         sa.CheckConstraint(
-            "known_volume_cm3 >= 0.0", name=op.f("ck_porosimeter_calibration_known_volume_cm3")
+            "known_volume_cm3 >= 0.0 AND known_volume_cm3 <= 1e+300",
+            name=op.f("ck_porosimeter_calibration_known_volume_cm3"),
         ),
         sa.CheckConstraint("length(calibration) > 0", name=op.f("ck_porosimeter_calibration_calibration")),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_porosimeter_calibration_measured_by")),
@@ -323,10 +333,6 @@ def upgrade() -> None:
         sa.CheckConstraint(
             "net_confining_stress_mpa >= 0.0 AND net_confining_stress_mpa <= 500.0",
             name=op.f("ck_porosimeter_calibration_net_confining_stress_mpa"),
-        ),
-        sa.CheckConstraint(
-            "reference_pressure_gauge = 1 OR (reference_pressure_kpa >= 1e-12)",
-            name=op.f("ck_porosimeter_calibration_reference_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "reference_pressure_gauge IN (0, 1) AND (reference_pressure_gauge IS NULL) = (reference_pressure_kpa IS NULL)",
@@ -435,15 +441,23 @@ def upgrade() -> None:
             "result IN ('bulk volume', 'grain volume', 'pore volume', 'dry mass', 'porosity', 'grain density', 'bulk density', 'gas permeability', 'mean pressure', 'klinkenberg permeability', 'slip factor', 'liquid permeability', 'inertial coefficient', 'oil saturation', 'water saturation', 'gas saturation')",
             name=op.f("ck_certified_values_result"),
         ),
+        sa.CheckConstraint(
+            "certified_value >= -1e+300 AND certified_value <= 1e+300",
+            name=op.f("ck_certified_values_certified_value"),
+        ),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_certified_values_remarks")),
         sa.CheckConstraint("length(unit) > 0", name=op.f("ck_certified_values_unit")),
-        sa.CheckConstraint("mean_pressure_kpa >= 1e-12", name=op.f("ck_certified_values_mean_pressure_kpa")),
+        sa.CheckConstraint(
+            "mean_pressure_kpa >= 1e-12 AND mean_pressure_kpa <= 1e+300",
+            name=op.f("ck_certified_values_mean_pressure_kpa"),
+        ),
         sa.CheckConstraint(
             "net_confining_stress_mpa >= 0.0 AND net_confining_stress_mpa <= 500.0",
             name=op.f("ck_certified_values_net_confining_stress_mpa"),
         ),
         sa.CheckConstraint(
-            "standard_uncertainty >= 0.0", name=op.f("ck_certified_values_standard_uncertainty")
+            "standard_uncertainty >= 0.0 AND standard_uncertainty <= 1e+300",
+            name=op.f("ck_certified_values_standard_uncertainty"),
         ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_certified_values_id")),
         sa.ForeignKeyConstraint(["standard_id"], ["plug.id"], name=op.f("fk_certified_values_standard_id")),
@@ -466,7 +480,9 @@ def upgrade() -> None:
         sa.Column("remarks", sa.Text(), nullable=True),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_core_gamma_measured_on")),
         sa.CheckConstraint("depth_m >= -500.0 AND depth_m <= 15000.0", name=op.f("ck_core_gamma_depth_m")),
-        sa.CheckConstraint("gamma_gapi >= 0.0", name=op.f("ck_core_gamma_gamma_gapi")),
+        sa.CheckConstraint(
+            "gamma_gapi >= 0.0 AND gamma_gapi <= 1e+300", name=op.f("ck_core_gamma_gamma_gapi")
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_core_gamma_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_core_gamma_remarks")),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_core_gamma_repeat")),
@@ -757,12 +773,17 @@ def upgrade() -> None:
             name=op.f("ck_distillation_oil_density_g_cm3"),
         ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_distillation_repeat")),
-        sa.CheckConstraint("thimble_mass_g >= 0.0", name=op.f("ck_distillation_thimble_mass_g")),
+        sa.CheckConstraint(
+            "thimble_mass_g >= 0.0 AND thimble_mass_g <= 1e+300", name=op.f("ck_distillation_thimble_mass_g")
+        ),
         sa.CheckConstraint(
             "trap_temperature_degc >= 0.0 AND trap_temperature_degc <= 100.0",
             name=op.f("ck_distillation_trap_temperature_degc"),
         ),
-        sa.CheckConstraint("water_volume_cm3 >= 0.0", name=op.f("ck_distillation_water_volume_cm3")),
+        sa.CheckConstraint(
+            "water_volume_cm3 >= 0.0 AND water_volume_cm3 <= 1e+300",
+            name=op.f("ck_distillation_water_volume_cm3"),
+        ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_distillation_id")),
         sa.ForeignKeyConstraint(["plug_id"], ["plug.id"], name=op.f("fk_distillation_plug_id")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_distillation")),
@@ -812,6 +833,22 @@ def upgrade() -> None:
             "stress_type IN ('hydrostatic', 'biaxial')", name=op.f("ck_gas_permeability_stress_type")
         ),
         sa.CheckConstraint(
+            "(confining_pressure_gauge = 1 AND confining_pressure_kpa >= -120.0 AND confining_pressure_kpa <= 1e+300) OR (confining_pressure_kpa >= 1e-12 AND confining_pressure_kpa <= 1e+300)",
+            name=op.f("ck_gas_permeability_confining_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "(downstream_pressure_gauge = 1 AND downstream_pressure_kpa >= -120.0 AND downstream_pressure_kpa <= 1e+300) OR (downstream_pressure_kpa >= 1e-12 AND downstream_pressure_kpa <= 1e+300)",
+            name=op.f("ck_gas_permeability_downstream_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "(flow_pressure_gauge = 1 AND flow_pressure_kpa >= -120.0 AND flow_pressure_kpa <= 1e+300) OR (flow_pressure_kpa >= 1e-12 AND flow_pressure_kpa <= 1e+300)",
+            name=op.f("ck_gas_permeability_flow_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "(upstream_pressure_gauge = 1 AND upstream_pressure_kpa >= -120.0 AND upstream_pressure_kpa <= 1e+300) OR (upstream_pressure_kpa >= 1e-12 AND upstream_pressure_kpa <= 1e+300)",
+            name=op.f("ck_gas_permeability_upstream_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
             "(upstream_pressure_kpa IS NOT NULL) OR (pressure_difference_kpa IS NOT NULL)",
             name=op.f("ck_gas_permeability_either_1"),
         ),
@@ -820,37 +857,29 @@ def upgrade() -> None:
             name=op.f("ck_gas_permeability_barometric_pressure_kpa"),
         ),
         sa.CheckConstraint(
-            "confining_pressure_gauge = 1 OR (confining_pressure_kpa >= 1e-12)",
-            name=op.f("ck_gas_permeability_confining_pressure_kpa"),
-        ),
-        sa.CheckConstraint(
             "confining_pressure_gauge IN (0, 1) AND (confining_pressure_gauge IS NULL) = (confining_pressure_kpa IS NULL)",
             name=op.f("ck_gas_permeability_confining_pressure_gauge"),
-        ),
-        sa.CheckConstraint(
-            "downstream_pressure_gauge = 1 OR (downstream_pressure_kpa >= 1e-12)",
-            name=op.f("ck_gas_permeability_downstream_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "downstream_pressure_gauge IN (0, 1) AND (downstream_pressure_gauge IS NULL) = (downstream_pressure_kpa IS NULL)",
             name=op.f("ck_gas_permeability_downstream_pressure_gauge"),
         ),
         sa.CheckConstraint(
-            "flow_pressure_gauge = 1 OR (flow_pressure_kpa >= 1e-12)",
-            name=op.f("ck_gas_permeability_flow_pressure_kpa"),
-        ),
-        sa.CheckConstraint(
             "flow_pressure_gauge IN (0, 1) AND (flow_pressure_gauge IS NULL) = (flow_pressure_kpa IS NULL)",
             name=op.f("ck_gas_permeability_flow_pressure_gauge"),
         ),
         sa.CheckConstraint(
-            "flow_rate_cm3_per_s >= 1e-12", name=op.f("ck_gas_permeability_flow_rate_cm3_per_s")
+            "flow_rate_cm3_per_s >= 1e-12 AND flow_rate_cm3_per_s <= 1e+300",
+            name=op.f("ck_gas_permeability_flow_rate_cm3_per_s"),
         ),
         sa.CheckConstraint(
             "flow_temperature_degc >= -50.0 AND flow_temperature_degc <= 200.0",
             name=op.f("ck_gas_permeability_flow_temperature_degc"),
         ),
-        sa.CheckConstraint("geometric_factor >= 1e-12", name=op.f("ck_gas_permeability_geometric_factor")),
+        sa.CheckConstraint(
+            "geometric_factor >= 1e-12 AND geometric_factor <= 1e+300",
+            name=op.f("ck_gas_permeability_geometric_factor"),
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_gas_permeability_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_gas_permeability_remarks")),
         sa.CheckConstraint("length(step) > 0", name=op.f("ck_gas_permeability_step")),
@@ -859,7 +888,8 @@ def upgrade() -> None:
             name=op.f("ck_gas_permeability_net_confining_stress_mpa"),
         ),
         sa.CheckConstraint(
-            "pressure_difference_kpa >= 1e-12", name=op.f("ck_gas_permeability_pressure_difference_kpa")
+            "pressure_difference_kpa >= 1e-12 AND pressure_difference_kpa <= 1e+300",
+            name=op.f("ck_gas_permeability_pressure_difference_kpa"),
         ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_gas_permeability_repeat")),
         sa.CheckConstraint(
@@ -873,10 +903,6 @@ def upgrade() -> None:
         sa.CheckConstraint(
             "temperature_degc >= -50.0 AND temperature_degc <= 1000.0",
             name=op.f("ck_gas_permeability_temperature_degc"),
-        ),
-        sa.CheckConstraint(
-            "upstream_pressure_gauge = 1 OR (upstream_pressure_kpa >= 1e-12)",
-            name=op.f("ck_gas_permeability_upstream_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "upstream_pressure_gauge IN (0, 1) AND (upstream_pressure_gauge IS NULL) = (upstream_pressure_kpa IS NULL)",
@@ -915,6 +941,14 @@ def upgrade() -> None:
         sa.Column("remarks", sa.Text(), nullable=True),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_grain_volume_measured_on")),
         sa.CheckConstraint(
+            "(expanded_pressure_gauge = 1 AND expanded_pressure_kpa >= -120.0 AND expanded_pressure_kpa <= 1e+300) OR (expanded_pressure_kpa >= 1e-12 AND expanded_pressure_kpa <= 1e+300)",
+            name=op.f("ck_grain_volume_expanded_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "(reference_pressure_gauge = 1 AND reference_pressure_kpa >= -120.0 AND reference_pressure_kpa <= 1e+300) OR (reference_pressure_kpa >= 1e-12 AND reference_pressure_kpa <= 1e+300)",
+            name=op.f("ck_grain_volume_reference_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
             "(reference_pressure_kpa IS NOT NULL AND expanded_pressure_kpa IS NOT NULL) OR (grain_volume_cm3 IS NOT NULL)",
             name=op.f("ck_grain_volume_either_1"),
         ),
@@ -922,27 +956,28 @@ def upgrade() -> None:
             "barometric_pressure_kpa >= 40.0 AND barometric_pressure_kpa <= 120.0",
             name=op.f("ck_grain_volume_barometric_pressure_kpa"),
         ),
-        sa.CheckConstraint("billet_volume_cm3 >= 0.0", name=op.f("ck_grain_volume_billet_volume_cm3")),
-        sa.CheckConstraint("container_volume_cm3 >= 0.0", name=op.f("ck_grain_volume_container_volume_cm3")),
+        sa.CheckConstraint(
+            "billet_volume_cm3 >= 0.0 AND billet_volume_cm3 <= 1e+300",
+            name=op.f("ck_grain_volume_billet_volume_cm3"),
+        ),
+        sa.CheckConstraint(
+            "container_volume_cm3 >= 0.0 AND container_volume_cm3 <= 1e+300",
+            name=op.f("ck_grain_volume_container_volume_cm3"),
+        ),
         sa.CheckConstraint(
             "cup_temperature_degc >= -50.0 AND cup_temperature_degc <= 200.0",
             name=op.f("ck_grain_volume_cup_temperature_degc"),
         ),
         sa.CheckConstraint(
-            "expanded_pressure_gauge = 1 OR (expanded_pressure_kpa >= 1e-12)",
-            name=op.f("ck_grain_volume_expanded_pressure_kpa"),
-        ),
-        sa.CheckConstraint(
             "expanded_pressure_gauge IN (0, 1) AND (expanded_pressure_gauge IS NULL) = (expanded_pressure_kpa IS NULL)",
             name=op.f("ck_grain_volume_expanded_pressure_gauge"),
         ),
-        sa.CheckConstraint("grain_volume_cm3 >= 1e-12", name=op.f("ck_grain_volume_grain_volume_cm3")),
+        sa.CheckConstraint(
+            "grain_volume_cm3 >= 1e-12 AND grain_volume_cm3 <= 1e+300",
+            name=op.f("ck_grain_volume_grain_volume_cm3"),
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_grain_volume_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_grain_volume_remarks")),
-        sa.CheckConstraint(
-            "reference_pressure_gauge = 1 OR (reference_pressure_kpa >= 1e-12)",
-            name=op.f("ck_grain_volume_reference_pressure_kpa"),
-        ),
         sa.CheckConstraint(
             "reference_pressure_gauge IN (0, 1) AND (reference_pressure_gauge IS NULL) = (reference_pressure_kpa IS NULL)",
             name=op.f("ck_grain_volume_reference_pressure_gauge"),
@@ -991,16 +1026,25 @@ def upgrade() -> None:
             "coating_density_g_cm3 >= 0.05 AND coating_density_g_cm3 <= 20.0",
             name=op.f("ck_immersion_coating_density_g_cm3"),
         ),
-        sa.CheckConstraint("coating_mass_g >= 0.0", name=op.f("ck_immersion_coating_mass_g")),
+        sa.CheckConstraint(
+            "coating_mass_g >= 0.0 AND coating_mass_g <= 1e+300", name=op.f("ck_immersion_coating_mass_g")
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_immersion_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_immersion_remarks")),
         sa.CheckConstraint(
             "liquid_density_g_cm3 >= 0.2 AND liquid_density_g_cm3 <= 20.0",
             name=op.f("ck_immersion_liquid_density_g_cm3"),
         ),
-        sa.CheckConstraint("mass_displaced_g >= 1e-12", name=op.f("ck_immersion_mass_displaced_g")),
-        sa.CheckConstraint("mass_immersed_g >= 0.0", name=op.f("ck_immersion_mass_immersed_g")),
-        sa.CheckConstraint("mass_in_air_g >= 1e-12", name=op.f("ck_immersion_mass_in_air_g")),
+        sa.CheckConstraint(
+            "mass_displaced_g >= 1e-12 AND mass_displaced_g <= 1e+300",
+            name=op.f("ck_immersion_mass_displaced_g"),
+        ),
+        sa.CheckConstraint(
+            "mass_immersed_g >= 0.0 AND mass_immersed_g <= 1e+300", name=op.f("ck_immersion_mass_immersed_g")
+        ),
+        sa.CheckConstraint(
+            "mass_in_air_g >= 1e-12 AND mass_in_air_g <= 1e+300", name=op.f("ck_immersion_mass_in_air_g")
+        ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_immersion_repeat")),
         sa.CheckConstraint(
             "temperature_degc >= -50.0 AND temperature_degc <= 1000.0",
@@ -1034,15 +1078,20 @@ def upgrade() -> None:
         sa.Column("remarks", sa.Text(), nullable=True),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_liquid_permeability_measured_on")),
         sa.CheckConstraint(
-            "downstream_pressure_gauge = 1 OR (downstream_pressure_kpa >= 1e-12)",
+            "(downstream_pressure_gauge = 1 AND downstream_pressure_kpa >= -120.0 AND downstream_pressure_kpa <= 1e+300) OR (downstream_pressure_kpa >= 1e-12 AND downstream_pressure_kpa <= 1e+300)",
             name=op.f("ck_liquid_permeability_downstream_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "(upstream_pressure_gauge = 1 AND upstream_pressure_kpa >= -120.0 AND upstream_pressure_kpa <= 1e+300) OR (upstream_pressure_kpa >= 1e-12 AND upstream_pressure_kpa <= 1e+300)",
+            name=op.f("ck_liquid_permeability_upstream_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "downstream_pressure_gauge IN (0, 1) AND (downstream_pressure_gauge IS NULL) = (downstream_pressure_kpa IS NULL)",
             name=op.f("ck_liquid_permeability_downstream_pressure_gauge"),
         ),
         sa.CheckConstraint(
-            "flow_rate_cm3_per_s >= 1e-12", name=op.f("ck_liquid_permeability_flow_rate_cm3_per_s")
+            "flow_rate_cm3_per_s >= 1e-12 AND flow_rate_cm3_per_s <= 1e+300",
+            name=op.f("ck_liquid_permeability_flow_rate_cm3_per_s"),
         ),
         sa.CheckConstraint("length(liquid) > 0", name=op.f("ck_liquid_permeability_liquid")),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_liquid_permeability_measured_by")),
@@ -1058,14 +1107,13 @@ def upgrade() -> None:
             name=op.f("ck_liquid_permeability_temperature_degc"),
         ),
         sa.CheckConstraint(
-            "upstream_pressure_gauge = 1 OR (upstream_pressure_kpa >= 1e-12)",
-            name=op.f("ck_liquid_permeability_upstream_pressure_kpa"),
-        ),
-        sa.CheckConstraint(
             "upstream_pressure_gauge IN (0, 1) AND (upstream_pressure_gauge IS NULL) = (upstream_pressure_kpa IS NULL)",
             name=op.f("ck_liquid_permeability_upstream_pressure_gauge"),
         ),
-        sa.CheckConstraint("viscosity_mpas >= 1e-12", name=op.f("ck_liquid_permeability_viscosity_mpas")),
+        sa.CheckConstraint(
+            "viscosity_mpas >= 1e-12 AND viscosity_mpas <= 1e+300",
+            name=op.f("ck_liquid_permeability_viscosity_mpas"),
+        ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_liquid_permeability_id")),
         sa.ForeignKeyConstraint(["plug_id"], ["plug.id"], name=op.f("fk_liquid_permeability_plug_id")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_liquid_permeability")),
@@ -1093,10 +1141,12 @@ def upgrade() -> None:
         ),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_masses_measured_on")),
         sa.CheckConstraint("salt IN ('none', 'left', 'leached')", name=op.f("ck_masses_salt")),
-        sa.CheckConstraint("container_mass_g >= 0.0", name=op.f("ck_masses_container_mass_g")),
+        sa.CheckConstraint(
+            "container_mass_g >= 0.0 AND container_mass_g <= 1e+300", name=op.f("ck_masses_container_mass_g")
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_masses_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_masses_remarks")),
-        sa.CheckConstraint("mass_g >= 1e-12", name=op.f("ck_masses_mass_g")),
+        sa.CheckConstraint("mass_g >= 1e-12 AND mass_g <= 1e+300", name=op.f("ck_masses_mass_g")),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_masses_repeat")),
         sa.CheckConstraint(
             "salinity_g_per_kg >= 0.0 AND salinity_g_per_kg <= 400.0",
@@ -1176,8 +1226,13 @@ def upgrade() -> None:
             "base_depth_m >= -500.0 AND base_depth_m <= 15000.0", name=op.f("ck_plugs_base_depth_m")
         ),
         sa.CheckConstraint("depth_m >= -500.0 AND depth_m <= 15000.0", name=op.f("ck_plugs_depth_m")),
-        sa.CheckConstraint("jacket_mass_g >= 0.0", name=op.f("ck_plugs_jacket_mass_g")),
-        sa.CheckConstraint("jacket_volume_cm3 >= 0.0", name=op.f("ck_plugs_jacket_volume_cm3")),
+        sa.CheckConstraint(
+            "jacket_mass_g >= 0.0 AND jacket_mass_g <= 1e+300", name=op.f("ck_plugs_jacket_mass_g")
+        ),
+        sa.CheckConstraint(
+            "jacket_volume_cm3 >= 0.0 AND jacket_volume_cm3 <= 1e+300",
+            name=op.f("ck_plugs_jacket_volume_cm3"),
+        ),
         sa.CheckConstraint("length(facies) > 0", name=op.f("ck_plugs_facies")),
         sa.CheckConstraint("length(location) > 0", name=op.f("ck_plugs_location")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_plugs_remarks")),
@@ -1221,12 +1276,16 @@ def upgrade() -> None:
         sa.Column("remarks", sa.Text(), nullable=True),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_pore_volume_measured_on")),
         sa.CheckConstraint(
-            "barometric_pressure_kpa >= 40.0 AND barometric_pressure_kpa <= 120.0",
-            name=op.f("ck_pore_volume_barometric_pressure_kpa"),
+            "(expanded_pressure_gauge = 1 AND expanded_pressure_kpa >= -120.0 AND expanded_pressure_kpa <= 1e+300) OR (expanded_pressure_kpa >= 1e-12 AND expanded_pressure_kpa <= 1e+300)",
+            name=op.f("ck_pore_volume_expanded_pressure_kpa"),
         ),
         sa.CheckConstraint(
-            "expanded_pressure_gauge = 1 OR (expanded_pressure_kpa >= 1e-12)",
-            name=op.f("ck_pore_volume_expanded_pressure_kpa"),
+            "(reference_pressure_gauge = 1 AND reference_pressure_kpa >= -120.0 AND reference_pressure_kpa <= 1e+300) OR (reference_pressure_kpa >= 1e-12 AND reference_pressure_kpa <= 1e+300)",
+            name=op.f("ck_pore_volume_reference_pressure_kpa"),
+        ),
+        sa.CheckConstraint(
+            "barometric_pressure_kpa >= 40.0 AND barometric_pressure_kpa <= 120.0",
+            name=op.f("ck_pore_volume_barometric_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "expanded_pressure_gauge IN (0, 1) AND (expanded_pressure_gauge IS NULL) = (expanded_pressure_kpa IS NULL)",
@@ -1237,10 +1296,6 @@ def upgrade() -> None:
         sa.CheckConstraint(
             "net_confining_stress_mpa >= 0.0 AND net_confining_stress_mpa <= 500.0",
             name=op.f("ck_pore_volume_net_confining_stress_mpa"),
-        ),
-        sa.CheckConstraint(
-            "reference_pressure_gauge = 1 OR (reference_pressure_kpa >= 1e-12)",
-            name=op.f("ck_pore_volume_reference_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "reference_pressure_gauge IN (0, 1) AND (reference_pressure_gauge IS NULL) = (reference_pressure_kpa IS NULL)",
@@ -1285,11 +1340,11 @@ def upgrade() -> None:
         ),
         sa.CheckConstraint("gas IN ('nitrogen', 'helium', 'air')", name=op.f("ck_reported_permeability_gas")),
         sa.CheckConstraint(
-            "gas_permeability_limit IN ('below', 'above')",
+            "gas_permeability_limit IS NULL OR (gas_permeability_limit IN ('below', 'above') AND gas_permeability_md IS NOT NULL)",
             name=op.f("ck_reported_permeability_gas_permeability_limit"),
         ),
         sa.CheckConstraint(
-            "klinkenberg_permeability_limit IN ('below', 'above')",
+            "klinkenberg_permeability_limit IS NULL OR (klinkenberg_permeability_limit IN ('below', 'above') AND klinkenberg_permeability_md IS NOT NULL)",
             name=op.f("ck_reported_permeability_klinkenberg_permeability_limit"),
         ),
         sa.CheckConstraint(
@@ -1300,27 +1355,32 @@ def upgrade() -> None:
             name=op.f("ck_reported_permeability_either_1"),
         ),
         sa.CheckConstraint(
-            "gas_permeability_md >= 1e-12", name=op.f("ck_reported_permeability_gas_permeability_md")
+            "gas_permeability_md >= 1e-12 AND gas_permeability_md <= 1e+300",
+            name=op.f("ck_reported_permeability_gas_permeability_md"),
         ),
         sa.CheckConstraint(
-            "inertial_coefficient_per_m >= 0.0",
+            "inertial_coefficient_per_m >= 0.0 AND inertial_coefficient_per_m <= 1e+300",
             name=op.f("ck_reported_permeability_inertial_coefficient_per_m"),
         ),
         sa.CheckConstraint(
-            "klinkenberg_permeability_md >= 1e-12",
+            "klinkenberg_permeability_md >= 1e-12 AND klinkenberg_permeability_md <= 1e+300",
             name=op.f("ck_reported_permeability_klinkenberg_permeability_md"),
         ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_reported_permeability_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_reported_permeability_remarks")),
         sa.CheckConstraint(
-            "mean_pressure_kpa >= 1e-12", name=op.f("ck_reported_permeability_mean_pressure_kpa")
+            "mean_pressure_kpa >= 1e-12 AND mean_pressure_kpa <= 1e+300",
+            name=op.f("ck_reported_permeability_mean_pressure_kpa"),
         ),
         sa.CheckConstraint(
             "net_confining_stress_mpa >= 0.0 AND net_confining_stress_mpa <= 500.0",
             name=op.f("ck_reported_permeability_net_confining_stress_mpa"),
         ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_reported_permeability_repeat")),
-        sa.CheckConstraint("slip_factor_kpa >= 0.0", name=op.f("ck_reported_permeability_slip_factor_kpa")),
+        sa.CheckConstraint(
+            "slip_factor_kpa >= 0.0 AND slip_factor_kpa <= 1e+300",
+            name=op.f("ck_reported_permeability_slip_factor_kpa"),
+        ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_reported_permeability_id")),
         sa.ForeignKeyConstraint(
             ["permeameter_id"], ["instrument.id"], name=op.f("fk_reported_permeability_permeameter_id")
@@ -1380,20 +1440,35 @@ def upgrade() -> None:
         sa.Column("remarks", sa.Text(), nullable=True),
         sa.CheckConstraint("measured_on LIKE '____-__-__%'", name=op.f("ck_retort_measured_on")),
         sa.CheckConstraint(
-            "gas_sample_bulk_volume_cm3 >= 1e-12", name=op.f("ck_retort_gas_sample_bulk_volume_cm3")
+            "gas_sample_bulk_volume_cm3 >= 1e-12 AND gas_sample_bulk_volume_cm3 <= 1e+300",
+            name=op.f("ck_retort_gas_sample_bulk_volume_cm3"),
         ),
-        sa.CheckConstraint("gas_sample_mass_g >= 1e-12", name=op.f("ck_retort_gas_sample_mass_g")),
-        sa.CheckConstraint("gas_volume_cm3 >= 0.0", name=op.f("ck_retort_gas_volume_cm3")),
+        sa.CheckConstraint(
+            "gas_sample_mass_g >= 1e-12 AND gas_sample_mass_g <= 1e+300",
+            name=op.f("ck_retort_gas_sample_mass_g"),
+        ),
+        sa.CheckConstraint(
+            "gas_volume_cm3 >= 0.0 AND gas_volume_cm3 <= 1e+300", name=op.f("ck_retort_gas_volume_cm3")
+        ),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_retort_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_retort_remarks")),
         sa.CheckConstraint(
             "oil_density_g_cm3 >= 0.3 AND oil_density_g_cm3 <= 1.5", name=op.f("ck_retort_oil_density_g_cm3")
         ),
-        sa.CheckConstraint("oil_volume_cm3 >= 0.0", name=op.f("ck_retort_oil_volume_cm3")),
+        sa.CheckConstraint(
+            "oil_volume_cm3 >= 0.0 AND oil_volume_cm3 <= 1e+300", name=op.f("ck_retort_oil_volume_cm3")
+        ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_retort_repeat")),
-        sa.CheckConstraint("sample_bulk_volume_cm3 >= 1e-12", name=op.f("ck_retort_sample_bulk_volume_cm3")),
-        sa.CheckConstraint("sample_mass_g >= 1e-12", name=op.f("ck_retort_sample_mass_g")),
-        sa.CheckConstraint("water_volume_cm3 >= 0.0", name=op.f("ck_retort_water_volume_cm3")),
+        sa.CheckConstraint(
+            "sample_bulk_volume_cm3 >= 1e-12 AND sample_bulk_volume_cm3 <= 1e+300",
+            name=op.f("ck_retort_sample_bulk_volume_cm3"),
+        ),
+        sa.CheckConstraint(
+            "sample_mass_g >= 1e-12 AND sample_mass_g <= 1e+300", name=op.f("ck_retort_sample_mass_g")
+        ),
+        sa.CheckConstraint(
+            "water_volume_cm3 >= 0.0 AND water_volume_cm3 <= 1e+300", name=op.f("ck_retort_water_volume_cm3")
+        ),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_retort_id")),
         sa.ForeignKeyConstraint(["plug_id"], ["plug.id"], name=op.f("fk_retort_plug_id")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_retort")),
@@ -1450,7 +1525,9 @@ def upgrade() -> None:
         sa.CheckConstraint("aperture_mm >= 0.0 AND aperture_mm <= 4096.0", name=op.f("ck_sieve_aperture_mm")),
         sa.CheckConstraint("length(measured_by) > 0", name=op.f("ck_sieve_measured_by")),
         sa.CheckConstraint("length(remarks) > 0", name=op.f("ck_sieve_remarks")),
-        sa.CheckConstraint("mass_retained_g >= 0.0", name=op.f("ck_sieve_mass_retained_g")),
+        sa.CheckConstraint(
+            "mass_retained_g >= 0.0 AND mass_retained_g <= 1e+300", name=op.f("ck_sieve_mass_retained_g")
+        ),
         sa.CheckConstraint("repeat >= 1", name=op.f("ck_sieve_repeat")),
         sa.ForeignKeyConstraint(["id"], ["entry.id"], name=op.f("fk_sieve_id")),
         sa.ForeignKeyConstraint(["plug_id"], ["plug.id"], name=op.f("fk_sieve_plug_id")),
