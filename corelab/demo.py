@@ -88,7 +88,8 @@ def summary(lab: Lab, well: str) -> list[str]:
     for row in shots.to_dict("records"):
         lines.append(
             f"  {row['tool']} sidewalls {row['gun run']}: {row['shots']} shots, {row['recovered']} "
-            f"recovered, {row['partial']} partial, {row['misfired']} misfired, {row['lost']} lost, {row['empty']} empty"
+            f"recovered, {row['partial']} partial, {row['misfired']} misfired, {row['lost']} lost, "
+            f"{row['empty']} empty"
         )
     lines.append(
         f"  {'facies':22}{'plugs':>6}{'porosity':>16}{'k, mD (geometric)':>24}{'grain density':>15}{'Sw':>7}"

@@ -99,9 +99,9 @@ def did_you_mean(name: str, known: Sequence[str], most_listed: int = 12) -> str:
     if close:
         return "did you mean " + " or ".join(f"'{c}'" for c in close) + "?"
     if not known:
-        return "there is none yet"
+        return "there is none yet."
     listed = ", ".join(known[:most_listed])
-    return f"known: {listed}" + (", …" if len(known) > most_listed else "")
+    return f"known: {listed}" + (", …" if len(known) > most_listed else ".")
 
 
 def quoted(value: object, most: int = 60) -> str:

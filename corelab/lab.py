@@ -15,7 +15,7 @@ from corelab.bench import compute
 from corelab.bench import load as loading
 from corelab.bench import settings as lab_settings
 from corelab.bench.parse import Row
-from corelab.errors import NotFound, Problem, Refused, Usage, did_you_mean, quoted
+from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
 from corelab.interval import board, life, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema, store
@@ -60,11 +60,17 @@ class Lab:
     # -- transactions -------------------------------------------------------------------------------------
 
     def _require_file(self) -> None:
-        file = engines.sqlite_file(self.engine.url)
+        file = self._file()
         if file is not None and not file.exists():
             raise NotFound(
                 f"There is no lab at {file}; make one with 'corelab setup', or name another database."
             )
+
+    def _file(self) -> Path | None:
+        file = engines.sqlite_file(self.engine.url)
+        if file is not None and file.is_dir():
+            raise Unavailable(f"'{file}' cannot be used as a lab: it is a folder; name a file in it.")
+        return file
 
     @contextmanager
     def _reading(self) -> Iterator[sa.Connection]:
@@ -109,7 +115,7 @@ class Lab:
 
     def setup(self) -> Setup:
         """Make the database, or bring it to the newest schema."""
-        file = engines.sqlite_file(self.engine.url)
+        file = self._file()
         if file is not None and not file.absolute().parent.is_dir():
             raise NotFound(f"There is no folder {file.absolute().parent}: make it first.")
         before, after, backup = migrate.upgrade(self.engine)
@@ -514,6 +520,7 @@ class Lab:
         from corelab.reports.well import report
         from corelab.reports.workbook import write_workbook
 
+        _refuse_standards(well)
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             person = self._acting(connection)
@@ -526,6 +533,7 @@ class Lab:
         """Write the interval of a well as CSV, UTF-8 with a mark."""
         from corelab.formats.tables_out import write_csv
 
+        _refuse_standards(well)
         write_csv(Path(out), self.interval(well, **filters))
         return Path(out)
 
@@ -533,6 +541,7 @@ class Lab:
         """Write the interval of a well as Parquet."""
         from corelab.formats.tables_out import write_parquet
 
+        _refuse_standards(well)
         write_parquet(Path(out), self.interval(well, **filters))
         return Path(out)
 
@@ -547,6 +556,11 @@ def methods(key: str = "") -> list[dict[str, str]]:
         raise NotFound(f"There is no method {quoted(key)}; {did_you_mean(key, list(known))}")
     chosen: Collection[str] = [key] if key else known
     return [described(known[k]) for k in chosen]
+
+
+def _refuse_standards(well: str) -> None:
+    if store.name_key(well) == STANDARDS_WELL:
+        raise Usage(f"'{STANDARDS_WELL}' are check plugs, not a well: name a well to write its results.")
 
 
 def _login() -> str:

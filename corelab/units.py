@@ -12,9 +12,9 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass
 from types import MappingProxyType
-from typing import TYPE_CHECKING, TypeVar, cast
+from typing import TYPE_CHECKING, TypeVar
 
-from corelab.errors import CorelabError
+from corelab.errors import Usage
 
 if TYPE_CHECKING:
     import numpy as np
@@ -40,7 +40,7 @@ class Unit:
     gauge: bool = False
 
 
-class UnitTrouble(CorelabError):
+class UnitTrouble(Usage):
     """A unit that cannot be used here; says which ones can."""
 
 
@@ -241,7 +241,8 @@ Number = TypeVar("Number", "float", "NDArray[np.float64]")
 def to_base(values: Number, source: Unit) -> Number:
     """`values` in the base unit of their kind (a gauge pressure stays gauge)."""
     if source.symbol == "phi" and source.kind == "grain size":
-        return cast("Number", 2.0**-values)
+        size: Number = 2.0**-values
+        return size
     return values * source.factor + source.offset
 
 
@@ -250,7 +251,8 @@ def from_base(values: Number, target: Unit) -> Number:
     if target.symbol == "phi" and target.kind == "grain size":
         import numpy
 
-        return cast("Number", -numpy.log2(values))
+        phi: Number = -numpy.log2(values)
+        return phi
     return (values - target.offset) / target.factor
 
 
@@ -266,8 +268,12 @@ def convert(values: Number, source: Unit, target: Unit) -> Number:
     return from_base(to_base(values, source), target)
 
 
-def absolute_kpa(values_kpa: Number, gauge: object, barometer_kpa: Number) -> Number:
+def absolute_kpa(
+    values_kpa: float | NDArray[np.float64],
+    gauge: bool | NDArray[np.bool_],
+    barometer_kpa: float | NDArray[np.float64],
+) -> NDArray[np.float64]:
     """Absolute pressures [kPa] from values of which those marked `gauge` read zero at the barometer."""
     import numpy
 
-    return cast("Number", values_kpa + numpy.where(cast("bool", gauge), barometer_kpa, 0.0))
+    return numpy.asarray(values_kpa + numpy.where(gauge, barometer_kpa, 0.0))

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
@@ -13,7 +12,7 @@ import pandas as pd
 
 from corelab.bench.parse import Row
 from corelab.errors import Problem, did_you_mean, quoted
-from corelab.records.store import Identities
+from corelab.records.store import Identities, name_key
 from corelab.sheets import SHEETS, STANDARDS_WELL, kind_named
 from corelab.units import ATMOSPHERE_KPA, absolute_kpa
 
@@ -38,16 +37,11 @@ def tie(every: Sequence[Row], sound: Sequence[Row], identities: Identities, prob
 
     New identities are made where a register defines them, by any row of the load: a fault elsewhere in a
     register's row is named once, and does not make its name unknown to the rest. Where a register cannot
-    be read at all, the names it may define are not called unknown.
+    be read at all, or the name in a row of it cannot, the names it may define are not called unknown.
     """
-    unread = {
-        column.refers
-        for problem in problems
-        if problem.row is None and (kind := kind_named(problem.sheet or Path(problem.file).stem))
-        for column in SHEETS[kind].own_columns
-        if column.defines
-    }
-    unread |= {"run", "gun run", "plug"} if "well" in unread else set()
+    unread, perhaps = _unread(every, problems)
+    homeless: set[tuple[str, str]] = set()  # names whose row in the register does not tell their well
+    unknown: dict[tuple[str, int, str, str, str], list[tuple[Row, str]]] = defaultdict(list)
     for defining in (("job", "well", "instrument"), ("run", "gun run", "plug", "standard")):
         for row in every:
             for column in row.sheet.own_columns:
@@ -55,6 +49,8 @@ def tie(every: Sequence[Row], sound: Sequence[Row], identities: Identities, prob
                     well_id = _owner(row, column.refers, identities)
                     if well_id is not None:
                         identities.add(column.refers, row.names[column.name], well_id)
+                    else:
+                        homeless.add((column.refers, name_key(row.names[column.name])))
     for row in sound:
         _reserved(row, problems)
         for column in row.sheet.own_columns:
@@ -63,31 +59,74 @@ def tie(every: Sequence[Row], sound: Sequence[Row], identities: Identities, prob
             name = row.names[column.name]
             well_id = _owner(row, column.refers, identities)
             if well_id is None:
-                continue  # the unknown well is named already
+                row.unusable.add(column.name)  # the unknown well is named already
+                continue
             if column.refers == "instrument":
                 row.values[column.field] = identities.add("instrument", name)
                 continue
             found = identities.find(column.refers, name, well_id)
             if found is None:
-                if column.refers in unread:
-                    continue
-                known = identities.known(column.refers, well_id)
-                where = f" of well '{row.names['well']}'" if well_id and "well" in row.names else ""
-                hint = did_you_mean(name, known)
-                if not known and column.refers != "well":
-                    hint = f"load the sheet that registers it first, or together: {_REGISTER[column.refers]}"
-                problems.append(
-                    row.problem(
-                        column.name,
-                        f"the unknown {column.refers} {quoted(name)}",
-                        f"a {column.refers}{where} that the record or this load has",
-                        hint,
-                    )
-                )
+                row.unusable.add(column.name)
+                known_at_all = any(n != STANDARDS_WELL for n in identities.known(column.refers, well_id))
+                covered = column.refers in unread or (column.refers, name_key(name)) in homeless
+                if not covered and (known_at_all or not perhaps):
+                    unknown[column.refers, well_id, name, row.file, row.tab].append((row, column.name))
                 continue
             row.values[column.field] = found
+    _name_unknown(unknown, identities, problems)
 
 
+def _name_unknown(
+    unknown: Mapping[tuple[str, int, str, str, str], Sequence[tuple[Row, str]]],
+    identities: Identities,
+    problems: list[Problem],
+) -> None:
+    """A name that a sheet repeats in many rows is complained of a few times, and then counted."""
+    hints: dict[tuple[str, int, str], str] = {}
+    for (refers, well_id, name, _, _), rows in unknown.items():
+        asked = (refers, well_id, name)
+        if asked not in hints:
+            known = [n for n in identities.known(refers, well_id) if n != STANDARDS_WELL]
+            hints[asked] = _hint(name, refers, known, len(hints))
+        for number, (row, column) in enumerate(rows[: _MOST_NAMED + 1]):
+            more = len(rows) - _MOST_NAMED
+            counted = f", in {more} rows from here on" if number == _MOST_NAMED and more > 1 else ""
+            where = f" of well {quoted(row.names['well'])}" if well_id and "well" in row.names else ""
+            problems.append(
+                row.problem(
+                    column,
+                    f"the unknown {refers} {quoted(name)}{counted}",
+                    f"a {refers}{where} that the record or this load has",
+                    hints[asked],
+                )
+            )
+
+
+def _unread(every: Sequence[Row], problems: Sequence[Problem]) -> tuple[set[str], bool]:
+    """The identities whose register could not be read wholly, and whether a file may have been any."""
+    unread: set[str] = set()
+    perhaps = False
+    for problem in problems:
+        if problem.row is None or problem.column == "":
+            kind = kind_named(problem.sheet or Path(problem.file).stem)
+            perhaps |= kind is None
+            if kind is not None:
+                unread |= {c.refers for c in SHEETS[kind].own_columns if c.defines}
+    for row in every:
+        unread |= {c.refers for c in row.sheet.own_columns if c.defines and c.name in row.unusable}
+    return unread | ({"run", "gun run", "plug"} if "well" in unread else set()), perhaps
+
+
+def _hint(name: str, refers: str, known: Sequence[str], before: int) -> str:
+    if not known:
+        return f"load the sheet that registers it first, or together: {_REGISTER[refers]}"
+    if before >= _MOST_LOOKED_UP:  # likeness is slow to judge among many names
+        return f"see the sheet that registers it: {_REGISTER[refers]}"
+    return did_you_mean(name, known)
+
+
+_MOST_LOOKED_UP = 50
+_MOST_NAMED = 5
 _REGISTER = {
     "job": "jobs",
     "well": "wells",
@@ -250,27 +289,39 @@ _ROW_RULES = {
 
 
 def check_together(
-    rows: Sequence[Row], recorded: Mapping[str, pd.DataFrame], identities: Identities, stood_in_for: set[int]
+    rows: Sequence[Row],
+    every: Sequence[Row],
+    recorded: Mapping[str, pd.DataFrame],
+    identities: Identities,
+    stood_in_for: set[int],
 ) -> Findings:
-    """Runs against runs, plugs against runs and shots: this load with what the record has in force."""
+    """Runs against runs, plugs against runs and shots: this load with what the record has in force.
+
+    `every` row of the load, the faulty ones too, tells which shots are at least spoken of.
+    """
     found = Findings([], [])
     runs = _merged(rows, recorded.get("core runs"), "core runs", stood_in_for)
     shots = _merged(rows, recorded.get("sidewall shots"), "sidewall shots", stood_in_for)
     _check_runs(runs, identities, found)
-    by_run = {values["run_id"]: values for values, _ in runs}
-    by_shot = {(values["gun_run_id"], values["shot"].casefold()): values for values, _ in shots}
+    by_run = {values["run_id"]: (values, row) for values, row in runs}
+    by_shot = {(values["gun_run_id"], name_key(values["shot"])): (values, row) for values, row in shots}
+    spoken_of = {
+        (name_key(row.names.get("gun run", "")), name_key(row.values.get("shot", "")))
+        for row in every
+        if row.sheet.kind == "sidewall shots"
+    }
     for values, row in _merged(rows, recorded.get("core sections"), "core sections", stood_in_for):
         run = by_run.get(values["run_id"])
-        if row is not None and run is not None:
-            _check_within(row, values["top_depth_m"], run, identities, found, "top depth", "section")
+        if run is not None:
+            _check_within(row, values["top_depth_m"], run, identities, found, "top depth", "section", values)
+            _check_within(
+                row, values["base_depth_m"], run, identities, found, "base depth", "section", values
+            )
     for values, row in _merged(rows, recorded.get("plugs"), "plugs", stood_in_for):
-        if row is None and not runs and not shots:
-            continue
         run = by_run.get(values.get("run_id"))
         if run is not None:
             _check_within(row, values["depth_m"], run, identities, found, "depth", "plug", values)
-        if row is not None:
-            _check_shot(row, values, by_shot, found)
+        _check_shot(row, values, by_shot, spoken_of, identities, found)
     return found
 
 
@@ -283,7 +334,7 @@ def _merged(
     if recorded is not None:
         for record in recorded.to_dict("records"):
             if record["id"] not in stood_in_for:
-                plain = {k: None if isinstance(v, float) and v != v else v for k, v in record.items()}
+                plain = {str(k): None if isinstance(v, float) and v != v else v for k, v in record.items()}
                 merged.append((plain, None))
     return merged
 
@@ -317,8 +368,12 @@ def _check_runs(
             )
     for group in of_well.values():
         group.sort(key=lambda item: item[0]["top_depth_m"])
-        for (above, row_above), (below, row_below) in pairwise(group):
-            overlap = above["base_depth_m"] - below["top_depth_m"]
+        deepest = group[0]
+        for item in group[1:]:
+            (above, row_above), (below, row_below) = deepest, item
+            overlap = min(above["base_depth_m"], below["base_depth_m"]) - below["top_depth_m"]
+            if below["base_depth_m"] > above["base_depth_m"]:
+                deepest = item
             row = row_below or row_above
             if overlap > 1e-6 and row is not None:
                 other = identities.name("run", (above if row is row_below else below)["run_id"])
@@ -335,75 +390,93 @@ def _check_runs(
 def _check_within(
     row: Row | None,
     depth_m: float,
-    run: dict[str, Any],
+    run: tuple[Mapping[str, Any], Row | None],
     identities: Identities,
     found: Findings,
     column: str,
     what: str,
-    values: Mapping[str, Any] | None = None,
+    values: Mapping[str, Any],
 ) -> None:
-    top = run["top_depth_m"]
-    base = max(run["base_depth_m"], top + run["recovered_length_m"])
+    limits, row_of_run = run
+    top = limits["top_depth_m"]
+    base = max(limits["base_depth_m"], top + limits["recovered_length_m"])
     if top - DEPTH_ROUNDING_M <= depth_m <= base + DEPTH_ROUNDING_M:
         return
-    name = identities.name("run", run["run_id"])
-    shown = f"{depth_m:.3f} m"
-    if row is None:
-        name_of_plug = identities.name("plug", values["plug_id"]) if values else ""
+    name = identities.name("run", limits["run_id"])
+    if row is not None:
         found.problems.append(
-            Problem(
-                f"run {quoted(name)} from {top:.3f} to {base:.3f} m, which leaves the plug "
-                f"{quoted(name_of_plug)} at {shown} outside",
-                "a run that holds its plugs",
-                "correct the run, or the plug in the same load",
-                column="top depth",
+            row.problem(
+                column,
+                f"a {what} at {depth_m:.3f} m",
+                f"a depth within run {quoted(name)}, {top:.3f} to {base:.3f} m",
+                "check the depth, its unit and the run",
             )
         )
-        return
-    found.problems.append(
-        row.problem(
-            column,
-            f"a {what} at {shown}",
-            f"a depth within run {quoted(name)}, {top:.3f} to {base:.3f} m",
-            "check the depth, its unit and the run",
+    elif row_of_run is not None:
+        inside = identities.name("plug", values["plug_id"]) if what == "plug" else values["section"]
+        found.problems.append(
+            row_of_run.problem(
+                "top depth" if depth_m < top else "base depth",
+                f"run {quoted(name)} from {top:.3f} to {base:.3f} m, which leaves the {what} "
+                f"{quoted(inside)} at {depth_m:.3f} m outside",
+                f"a run that holds its {what}s",
+                f"correct the run, or the {what} in the same load",
+            )
         )
-    )
 
 
 def _check_shot(
-    row: Row, values: Mapping[str, Any], shots: Mapping[tuple[int, str], dict[str, Any]], found: Findings
+    row: Row | None,
+    values: Mapping[str, Any],
+    shots: Mapping[tuple[int, str], tuple[Mapping[str, Any], Row | None]],
+    spoken_of: set[tuple[str, str]],
+    identities: Identities,
+    found: Findings,
 ) -> None:
     shot_name = values.get("shot")
     if values["from"] != "sidewall" or not shot_name or values.get("gun_run_id") is None:
         return
-    shot = shots.get((values["gun_run_id"], shot_name.casefold()))
-    gun = row.names.get("gun run", "")
+    gun = identities.name("gun run", int(values["gun_run_id"]))
+    shot, row_of_shot = shots.get((values["gun_run_id"], name_key(shot_name)), (None, None))
     if shot is None:
-        known = [name for run, name in shots if run == values["gun_run_id"]]
-        found.problems.append(
-            row.problem(
-                "shot",
-                f"the unknown shot {quoted(shot_name)} of gun run {quoted(gun)}",
-                "a shot of the sheet 'sidewall shots'",
-                did_you_mean(shot_name, known),
+        if row is not None and not spoken_of & {(name_key(gun), name_key(shot_name)), (name_key(gun), "")}:
+            known = [one["shot"] for (run, _), (one, _) in shots.items() if run == values["gun_run_id"]]
+            found.problems.append(
+                row.problem(
+                    "shot",
+                    f"the unknown shot {quoted(shot_name)} of gun run {quoted(gun)}",
+                    "a shot of the sheet 'sidewall shots'",
+                    did_you_mean(shot_name, known),
+                )
             )
-        )
         return
     if shot["outcome"] in _EMPTY_OUTCOMES:
-        found.problems.append(
-            row.problem(
-                "shot",
-                f"a plug from shot {quoted(shot_name)}, whose outcome is '{shot['outcome']}'",
-                "a shot that brought a sample",
-                "check the shot's number, or correct its outcome",
+        plug = identities.name("plug", int(values["plug_id"]))
+        if row is not None:
+            found.problems.append(
+                row.problem(
+                    "shot",
+                    f"a plug from shot {quoted(shot_name)}, whose outcome is '{shot['outcome']}'",
+                    "a shot that brought a sample",
+                    "check the shot's number, or correct its outcome",
+                )
             )
-        )
-    if abs(shot["depth_m"] - values["depth_m"]) > 0.05:
+        elif row_of_shot is not None:
+            found.problems.append(
+                row_of_shot.problem(
+                    "outcome",
+                    f"'{shot['outcome']}' for a shot from which plug {quoted(plug)} was taken",
+                    "a shot that brought a sample",
+                    "check the outcome, or correct the plug in the same load",
+                )
+            )
+    asked = row or row_of_shot
+    if asked is not None and abs(shot["depth_m"] - values["depth_m"]) > 0.05:
         found.notices.append(
-            row.problem(
+            asked.problem(
                 "depth",
-                f"{values['depth_m']:.2f} m",
-                f"the depth of shot {quoted(shot_name)}, {shot['depth_m']:.2f} m",
+                f"a plug at {values['depth_m']:.2f} m",
+                f"the depth of its shot {quoted(shot_name)}, {shot['depth_m']:.2f} m",
                 "check it; it was taken as it stands",
             )
         )

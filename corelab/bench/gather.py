@@ -6,6 +6,7 @@ import hashlib
 from collections import defaultdict
 from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -15,7 +16,7 @@ from numpy.typing import NDArray
 from corelab.bench import settings as lab_settings
 from corelab.records import store
 
-Floats = NDArray[np.float64]
+Numbers = NDArray[Any]  # float64; complex where a derivative is taken by a complex step
 Whole = NDArray[np.intp]
 Texts = NDArray[np.object_]
 
@@ -34,23 +35,37 @@ KINDS = (
     "distillation",
     "retort",
 )
+#: Those of them that rest on the calibration of a porosimeter.
+EXPANSIONS = ("grain volume", "pore volume")
 
 
 @dataclass(slots=True)
 class Readings:
-    """Rows of one kind in force: `at` is the place of each row's plug in the tray."""
+    """Rows of one kind in force, an array a field: `at` is the place of each row's plug in the tray."""
 
-    frame: pd.DataFrame
     at: Whole
+    numbers: dict[str, Numbers]  # NaN where nothing was read
+    texts: dict[str, Texts]  # empty where nothing stands
+
+    @classmethod
+    def of(cls, frame: pd.DataFrame, at: Whole) -> Readings:
+        numbers: dict[str, Numbers] = {}
+        texts: dict[str, Texts] = {}
+        for name, column in frame.items():
+            if column.dtype == object:
+                texts[str(name)] = np.array(["" if v is None else v for v in column], dtype=object)
+            else:
+                numbers[str(name)] = column.to_numpy(dtype=np.float64)
+        return cls(at, numbers, texts)
 
     def __len__(self) -> int:
-        return len(self.frame)
+        return len(self.at)
 
-    def number(self, name: str) -> Floats:
-        return self.frame[name].to_numpy(dtype=np.float64, na_value=np.nan, copy=True)
+    def number(self, name: str) -> Numbers:
+        return self.numbers[name].copy()
 
     def text(self, name: str) -> Texts:
-        return np.array(["" if v is None else v for v in self.frame[name]], dtype=object)
+        return self.texts[name].copy()
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,7 +76,7 @@ class CalibrationRows:
     setup: str
     name: str
     date: str
-    frame: pd.DataFrame
+    readings: Readings
 
 
 @dataclass(slots=True)
@@ -85,10 +100,8 @@ def gather(connection: sa.Connection, plug_ids: Collection[int], stored: Mapping
     readings: dict[str, Readings] = {}
     for kind in KINDS:
         frame = store.in_force(connection, kind, ids.tolist())
-        readings[kind] = Readings(frame, np.searchsorted(ids, frame["plug_id"].to_numpy(dtype=np.intp)))
-    instruments = {
-        int(i) for kind in ("grain volume", "pore volume") for i in readings[kind].frame["instrument_id"]
-    }
+        readings[kind] = Readings.of(frame, np.searchsorted(ids, frame["plug_id"].to_numpy(dtype=np.intp)))
+    instruments = {int(i) for kind in EXPANSIONS for i in readings[kind].number("instrument_id")}
     rows = store.in_force(connection, "porosimeter calibration", instruments, by="instrument_id")
     calibrations = _calibrations(rows)
     tray = Tray(
@@ -110,15 +123,16 @@ def _calibrations(rows: pd.DataFrame) -> dict[tuple[int, str], list[CalibrationR
     labels = [c or "" for c in rows["calibration"]]
     days = [(d or "")[:10] for d in rows["measured_on"]]
     together = [f"label {a.casefold()}" if a else f"day {d}" for a, d in zip(labels, days, strict=True)]
-    for (instrument, setup, _), group in rows.groupby(
+    for _, group in rows.groupby(
         [rows["instrument_id"], rows["setup"], pd.Series(together, index=rows.index)], sort=True
     ):
         dates = [d for d in group["measured_on"] if d]
         label = next((c for c in group["calibration"] if c), "")
         date = max(dates) if dates else ""
-        key = (int(instrument), str(setup))
+        key = (int(group["instrument_id"].iloc[0]), str(group["setup"].iloc[0]))
         name = label or date or "undated"
-        found[key].append(CalibrationRows(*key, name, date, group.reset_index(drop=True)))
+        readings = Readings.of(group, np.zeros(len(group), dtype=np.intp))
+        found[key].append(CalibrationRows(*key, name, date, readings))
     return found
 
 
@@ -136,7 +150,9 @@ def in_force(candidates: Sequence[CalibrationRows], date: str) -> CalibrationRow
     else:
         before = [c for c in candidates if c.date and _on_or_before(c.date, date)]
         newest = max((c.date for c in before), default="")
-        able = [c for c in before if c.date == newest] + undated
+        # A reading without a time of day may have been taken before or after each calibration of that day.
+        same = 10 if len(date) == 10 and newest[:10] == date else None
+        able = [c for c in before if c.date[:same] == newest[:same]] + undated
         if not able:
             first = min(c.date for c in candidates)
             return f"the reading of {date} is older than the first calibration ({first})"
@@ -158,15 +174,15 @@ def _fingerprints(tray: Tray, stored: Mapping[str, str]) -> list[str]:
     digests: list[list[str]] = [[] for _ in range(len(tray))]
     for kind in KINDS:
         readings = tray.readings[kind]
-        for place, digest in zip(readings.at, readings.frame["digest"], strict=True):
+        for place, digest in zip(readings.at, readings.text("digest"), strict=True):
             digests[place].append(digest)
     of_instrument: dict[int, list[str]] = defaultdict(list)
     for (instrument, _), calibrations in sorted(tray.calibrations.items()):
         for calibration in calibrations:
-            of_instrument[instrument] += list(calibration.frame["digest"])
-    for kind in ("grain volume", "pore volume"):
+            of_instrument[instrument] += calibration.readings.text("digest").tolist()
+    for kind in EXPANSIONS:
         readings = tray.readings[kind]
-        used = set(zip(readings.at.tolist(), readings.frame["instrument_id"].tolist(), strict=True))
+        used = set(zip(readings.at.tolist(), readings.number("instrument_id").tolist(), strict=True))
         for place, instrument in used:
             digests[place] += of_instrument[int(instrument)]
     moving = [s.name for s in lab_settings.SETTINGS.values() if s.moves_results]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import math
+from collections import Counter
 from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -18,7 +19,7 @@ from corelab.formats.csv_in import read_csv
 from corelab.formats.table import Table
 from corelab.formats.workbook_in import read_workbook
 from corelab.records import store
-from corelab.records.schema import SHEET_TABLES, stored_columns
+from corelab.records.schema import IDENTITY, SHEET_TABLES, stored_columns
 from corelab.sheets import SHEETS, Sheet, kind_named
 
 _SAME = 1e-12
@@ -49,23 +50,30 @@ class LoadReport:
 
 def find_files(paths: Sequence[Path]) -> tuple[list[tuple[Path, str]], list[str], list[Problem]]:
     """The sheets to load with the names under which they are shown, what is passed over, and problems."""
-    files: dict[Path, str] = {}
+    files: dict[Path, Path] = {}  # where a file is -> how the user would name it
+    inside_of: dict[Path, Path] = {}
     ignored: list[str] = []
     problems: list[Problem] = []
     for path in paths:
-        if path.is_dir():
-            inside = sorted(p for p in path.rglob("*") if p.is_file())
-            for item in inside:
+        try:
+            is_folder, is_file = path.is_dir(), path.is_file()
+        except (OSError, ValueError):  # a name that no file can have
+            is_folder = is_file = False
+        if is_folder:
+            sheets = 0
+            for item in sorted(p for p in path.rglob("*") if p.is_file()):
                 hidden = any(part.startswith((".", "~$")) for part in item.relative_to(path).parts)
                 if item.suffix.lower() in _ENDINGS and not hidden:
-                    files.setdefault(item.resolve(), str(path.name / item.relative_to(path)))
+                    sheets += 1
+                    files.setdefault(item.resolve(), item)
+                    inside_of.setdefault(item, path)
                 else:
                     ignored.append(str(path.name / item.relative_to(path)))
-            if not any(p.suffix.lower() in _ENDINGS for p in inside):
+            if not sheets:
                 problems.append(
                     Problem("a folder without sheets", ".xlsx or .csv files in it", "give another", str(path))
                 )
-        elif path.is_file():
+        elif is_file:
             if path.suffix.lower() not in _ENDINGS:
                 problems.append(
                     Problem(
@@ -76,12 +84,20 @@ def find_files(paths: Sequence[Path]) -> tuple[list[tuple[Path, str]], list[str]
                     )
                 )
             else:
-                files.setdefault(path.resolve(), path.name)
+                files.setdefault(path.resolve(), path)
         else:
             beside = [p.name for p in path.parent.glob("*")] if path.parent.is_dir() else []
             hint = did_you_mean(path.name, beside) if nearest(path.name, beside) else "check the path"
             problems.append(Problem("no such file or folder", "an existing one", hint, str(path)))
-    return sorted(files.items(), key=lambda item: item[1]), ignored, problems
+    short = {
+        item: str(inside_of[item].name / item.relative_to(inside_of[item]))
+        if item in inside_of
+        else item.name
+        for item in files.values()
+    }
+    names = Counter(short.values())  # two files of one name are shown with their paths
+    shown = [(at, short[p] if names[short[p]] == 1 else str(p)) for at, p in files.items()]
+    return sorted(shown, key=lambda item: item[1]), ignored, problems
 
 
 def read_rows(
@@ -172,7 +188,8 @@ def plan(
     check.tie(rows, sound, identities, problems)
     for row in sound:
         problems += check.check_row(row, barometer_kpa)
-    tied = _sound(rows, problems)
+    tied = [row for row in _sound(rows, problems) if not row.unusable]
+    usable = {id(row) for row in tied}
     planned = Planned([], report, [])
     stood_in_for: set[int] = set()  # entries whose place a row of this load takes
     recorded: dict[str, Any] = {}
@@ -180,14 +197,17 @@ def plan(
         of_kind = [row for row in tied if row.sheet.kind == kind]
         frame = _recorded(connection, SHEETS[kind], of_kind)
         recorded[kind] = frame
-        _sort_out(SHEETS[kind], of_kind, frame, reason, planned, stood_in_for, problems)
+        faulty = [row for row in rows if row.sheet.kind == kind and id(row) not in usable]
+        _sort_out(SHEETS[kind], of_kind, faulty, frame, reason, planned, stood_in_for, problems)
     wells = {identities.owner("run", r.values["run_id"]) for r in tied if r.sheet.kind == "core runs"}
     wells |= {identities.owner("plug", r.values["plug_id"]) for r in tied if r.sheet.kind == "plugs"}
     wells |= {identities.owner("run", r.values["run_id"]) for r in tied if r.sheet.kind == "core sections"}
     wells |= {
         identities.owner("gun run", r.values["gun_run_id"]) for r in tied if r.sheet.kind == "sidewall shots"
     }
-    together = check.check_together(tied, _of_wells(connection, wells, identities), identities, stood_in_for)
+    together = check.check_together(
+        _sound(tied, problems), rows, _of_wells(connection, wells, identities), identities, stood_in_for
+    )
     problems += together.problems
     report.notices += together.notices
     if problems:
@@ -204,7 +224,7 @@ def _sound(rows: list[Row], problems: Sequence[Problem]) -> list[Row]:
 
 def _of_wells(connection: sa.Connection, wells: set[int], identities: store.Identities) -> dict[str, Any]:
     def of(kind: str, identity: str, by: str) -> Any:
-        table = store.schema.IDENTITY[identity].name
+        table = IDENTITY[identity].name
         ids = [n for n, owner in identities.owners[table].items() if owner in wells]
         return store.in_force(connection, kind, ids, by=by)
 
@@ -257,6 +277,7 @@ def _same(a: Any, b: Any) -> bool:
 def _sort_out(
     sheet: Sheet,
     rows: list[Row],
+    faulty: list[Row],
     frame: Any,
     reason: str,
     planned: Planned,
@@ -272,6 +293,7 @@ def _sort_out(
     if sheet.reading:
         _number_repeats(rows, key_fields, problems)
     seen: dict[tuple[Any, ...], Row] = {}
+    uncounted = {_names(row) for row in faulty}  # beside a row left out, repeats are counted wrongly
     report = planned.report
     for row in rows:
         values = row.values
@@ -297,11 +319,13 @@ def _sort_out(
                 report.unchanged[sheet.kind] = report.unchanged.get(sheet.kind, 0) + 1
                 stood_in_for.add(int(old["id"]))
                 continue
+            stood_in_for.add(int(old["id"]))
             if not reason:
+                if sheet.reading and row.repeat is None and _names(row) in uncounted:
+                    continue
                 problems.append(_needs_reason(row, sheet, differing, values, old))
                 continue
             supersedes = int(old["id"])
-            stood_in_for.add(supersedes)
             planned.touched.append((sheet.kind, old))
         counts = report.corrected if supersedes else report.new
         counts[sheet.kind] = counts.get(sheet.kind, 0) + 1
@@ -309,6 +333,10 @@ def _sort_out(
         planned.new.append(
             store.NewEntry(sheet.kind, values, row.entered, row.file, row.tab, row.number, supersedes)
         )
+
+
+def _names(row: Row) -> tuple[tuple[str, str], ...]:
+    return tuple((column, store.name_key(name)) for column, name in row.names.items())
 
 
 def _key_words(sheet: Sheet) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 import math
 import re
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from datetime import date, datetime, time
 from typing import Any
@@ -13,12 +13,19 @@ from typing import Any
 from corelab import units
 from corelab.errors import Problem, did_you_mean, nearest, quoted
 from corelab.formats.table import Bad, Cell, Percent, Table
+from corelab.quantities import ENTERED, RESULTS, TINY
 from corelab.sheets import Column, Sheet
 
-_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
-_DATE = re.compile(r"\d{4}-\d{2}-\d{2}(?:[T ]\d{2}:\d{2}(?::\d{2}(?:\.\d{1,6})?)?)?")
+_NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?", re.ASCII)
+_DATE = re.compile(r"\d{4}-\d{2}-\d{2}(?:[T ]\d{2}:\d{2}(?::\d{2}(?:\.\d{1,6})?)?)?", re.ASCII)
 _HEADING = re.compile(r"^(?P<name>[^\[\]]*?)\s*(?:\[(?P<unit>[^\[\]]*)\])?$")
+_LONGEST_HEADING = 100
 _NOTHING = {"", "-", "n/a"}
+_NO_BREAK = re.compile("[\u00a0\u2007\u202f]")
+_UNSEEN = re.compile("[\u200b\u2060\ufeff]")  # of no width: two names that look alike would differ
+LARGEST = 1e300  # beyond it sums and products overflow
+HIGHEST_BAROMETER_KPA = ENTERED["barometric pressure"].possible[1]
+_LARGEST_REPEAT = 999_999
 PERCENT_OF_READING = "% of reading"
 
 Convert = Callable[[Cell], Any]
@@ -28,7 +35,8 @@ Convert = Callable[[Cell], Any]
 class Row:
     """One row of a sheet, typed but not yet tied to the record.
 
-    `names` holds the names that refer to identities, by column; `values` everything else, by field.
+    `names` holds the names that refer to identities, by column; `values` everything else, by field;
+    `unusable` the columns whose cell has been complained of.
     """
 
     sheet: Sheet
@@ -39,6 +47,7 @@ class Row:
     values: dict[str, Any] = field(default_factory=dict)
     entered: dict[str, object] = field(default_factory=dict)
     repeat: int | None = None
+    unusable: set[str] = field(default_factory=set)
 
     def problem(self, column: str, found: str, wanted: str, action: str) -> Problem:
         return Problem(found, wanted, action, self.file, self.tab, self.number, column)
@@ -63,15 +72,14 @@ def parse(
     table: Table, sheet: Sheet, *, decimal_comma: bool
 ) -> tuple[list[Row], list[Problem], list[Problem]]:
     """The rows of a table, the problems, and the notices (taken, but worth a question)."""
-    placed, problems = _placed(table, sheet)
+    placed, problems, excused = _placed(table, sheet)
+    whole = not problems
     rows = [Row(sheet, table.file, table.sheet, number) for number in table.rows]
     notices: list[Problem] = []
     for item in placed:
         _fill(item, rows, problems, notices, decimal_comma)
-    if not problems:
-        given = {item.column.name for item in placed}
-        for row in rows:
-            _complete(row, given, problems)
+    for row in rows:
+        _complete(row, excused, whole, problems)
     return rows, problems, notices
 
 
@@ -79,19 +87,27 @@ def _normal(text: str) -> str:
     return re.sub(r"\s+", " ", text).strip().casefold()
 
 
-def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem]]:
+def _plain(text: str) -> str:
+    return _normal(re.sub(r"[_-]", " ", text))
+
+
+def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem], set[str]]:
+    """The columns, what is wrong with the headings, and the columns that are known to be amiss."""
     by_name = {c.name: c for c in sheet.columns}
     placed: list[_Placed] = []
     problems: list[Problem] = []
     seen: dict[tuple[str, int], str] = {}
+    amiss: set[str] = set()
 
     def trouble(heading: str, found: str, wanted: str, action: str) -> None:
         problems.append(Problem(found, wanted, action, table.file, table.sheet, None, heading))
 
     for heading, cells in zip(table.headings, table.columns, strict=True):
+        if len(heading) > _LONGEST_HEADING:
+            heading = " ".join(heading.split())[:_LONGEST_HEADING]
         match = _HEADING.match(heading.strip())
         name = _normal(match["name"]) if match else _normal(heading)
-        number = 0
+        number: int | None = None
         column = by_name.get(name)
         if column is None and (numbered := re.fullmatch(r"(.*\D)\s*(\d{1,2})", name)):
             column = by_name.get(numbered[1].strip())
@@ -101,6 +117,7 @@ def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem]]:
         if column is None or not match:
             shown = [c.heading for c in sheet.columns]
             close = nearest(name, list(by_name))
+            amiss.update(close[:1])
             hint = (
                 did_you_mean(by_name[close[0]].heading, [by_name[c].heading for c in close]) if close else ""
             )
@@ -112,12 +129,13 @@ def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem]]:
             )
             continue
         if column.repeated:
-            number = number or 1
+            number = 1 if number is None else number
             if not 1 <= number <= len(column.fields):
                 trouble(
                     heading, f"number {number}", f"1 to {len(column.fields)}", "number the columns from 1 on"
                 )
                 continue
+        number = number or 0
         if (column.name, number) in seen:
             trouble(
                 heading,
@@ -133,6 +151,7 @@ def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem]]:
             try:
                 unit = units.unit(typed_unit, column.kind)
             except units.UnitTrouble as wrong:
+                amiss.add(column.name)
                 why = str(wrong)
                 accepted = ", ".join(units.accepted(column.kind))
                 trouble(
@@ -143,25 +162,21 @@ def _placed(table: Table, sheet: Sheet) -> tuple[list[_Placed], list[Problem]]:
                 )
                 continue
         elif match["unit"] is not None:
+            amiss.add(column.name)
             trouble(heading, f"a unit [{typed_unit}]", f"none: '{column.name}' has no unit", "take it out")
             continue
         placed.append(_Placed(column, number, unit, heading, cells))
     found = {item.column.name for item in placed}
-    unknown = bool(problems)
     for column in sheet.columns:
-        if column.required and column.name not in found and not _in_trouble(column, problems):
-            action = f"add a column headed '{column.heading}'"
+        if column.required and column.name not in found | amiss:
+            amiss.add(column.name)
             trouble(
                 column.heading,
-                "no such column" + (" (see the headings named above)" if unknown else ""),
+                "no such column",
                 f"the column '{column.name}', which must be filled in",
-                action,
+                f"add a column headed '{column.heading}'",
             )
-    return placed, problems
-
-
-def _in_trouble(column: Column, problems: Iterable[Problem]) -> bool:
-    return any(re.match(rf"{re.escape(column.name)}\b", _normal(p.column)) for p in problems)
+    return placed, problems, amiss
 
 
 def _fill(
@@ -169,6 +184,7 @@ def _fill(
 ) -> None:
     column = item.column
     convert = _converter(item, decimal_comma)
+    stored = units.unit(column.unit, column.kind) if column.unit else None
     plausible = column.quantity.plausible if column.quantity else (-math.inf, math.inf)
     target = column.fields[max(item.number - 1, 0)] if column.repeated else column.field
     for row, cell in zip(rows, item.cells, strict=True):
@@ -179,27 +195,25 @@ def _fill(
             value = convert(cell)
         except _Fault as fault:
             found, wanted, action = fault.args
+            row.unusable.add(column.name)
             problems.append(row.problem(item.heading, found, wanted, action))
             continue
         limit = None
         if isinstance(value, tuple):
             limit, value = value
-        if isinstance(value, float) and item.unit is not None:
-            value = float(units.to_base(value, item.unit))
-            if column.unit:
-                value = float(units.from_base(value, units.unit(column.unit, column.kind)))
-            value = 0.0 if value == 0.0 else value
+        if isinstance(value, float) and item.unit is not None and stored is not None:
+            value = _stored(value, item.unit, stored)
         if isinstance(value, float):
-            if fault := _outside(column, value, item.unit):
-                problems.append(row.problem(item.heading, f"{quoted(_shown(cell))}", *fault))
+            if outside := _outside(column, value, item.unit):
+                row.unusable.add(column.name)
+                problems.append(row.problem(item.heading, quoted(_shown(cell)), *outside))
                 continue
             if not plausible[0] <= value <= plausible[1] and not (item.unit and item.unit.gauge):
-                low, high = (_range_text(v, item.unit) for v in plausible)
                 notices.append(
                     row.problem(
                         item.heading,
                         quoted(_shown(cell)),
-                        f"usually {low} to {high}",
+                        f"usually {_range_text(column, plausible, item.unit)}",
                         "check it; it was taken as it stands",
                     )
                 )
@@ -216,36 +230,41 @@ def _fill(
             row.values[column.limit_field] = limit
 
 
-def _range_text(value: float, unit: units.Unit | None) -> str:
-    if math.isinf(value):
-        return "any"
-    if unit is None:
-        return f"{value:g}"
-    shown = units.from_base(value, unit) if unit.symbol != "phi" or unit.kind != "grain size" else value
-    return f"{float(shown):.6g} {unit.symbol if unit.symbol != 'phi' or unit.kind != 'grain size' else 'mm'}"
+def _stored(value: float, typed: units.Unit, stored: units.Unit) -> float:
+    """A value in the unit in which it is kept; beyond all numbers where it is too large to convert."""
+    try:
+        value = float(units.from_base(units.to_base(value, typed), stored))
+    except OverflowError:
+        return math.inf
+    return 0.0 if value == 0.0 else value
+
+
+def _range_text(column: Column, bounds: tuple[float, float], unit: units.Unit | None) -> str:
+    """A range of the data dictionary, in the unit of the heading."""
+    low, high = bounds
+    symbol = unit.symbol if unit else ""
+    if unit and unit.kind == "grain size" and unit.symbol == "phi":  # falls as the size grows
+        symbol = column.unit
+    elif unit:
+        stored = units.unit(column.unit, column.kind)
+        low, high = (v if math.isinf(v) else units.convert(v, stored, unit) for v in bounds)
+    if 0 < bounds[0] <= TINY and high == math.inf:
+        return "more than zero"
+    if high == math.inf:
+        return f"{low:.6g} {symbol} or more".replace("  ", " ")
+    return f"{low:.6g} to {high:.6g} {symbol}".rstrip()
 
 
 def _outside(column: Column, value: float, unit: units.Unit | None) -> tuple[str, str] | None:
     """What is wanted and what to do, where a value is impossible."""
-    low, high = column.quantity.possible if column.quantity else (-math.inf, math.inf)
-    if unit is not None and unit.gauge:  # judged with the barometer later
-        return None
+    if not abs(value) <= LARGEST:
+        return "a number that can be kept", "it is too large: check the value and the unit in the heading"
+    low, high = bounds = column.quantity.possible if column.quantity else (-math.inf, math.inf)
+    if unit is not None and unit.gauge:  # reads zero at the barometer, with which it is judged later
+        low, high = bounds = -HIGHEST_BAROMETER_KPA, math.inf
     if low <= value <= high:
         return None
-    if column.quantity is not None and column.unit and unit is not None and unit.symbol != "phi":
-        stored = units.unit(column.unit, column.kind)
-        low_u, high_u = (
-            units.from_base(units.to_base(v, stored), unit) if math.isfinite(v) else v for v in (low, high)
-        )
-    else:
-        low_u, high_u = low, high
-    symbol = f" {unit.symbol}" if unit is not None else ""
-    if 0 < low <= 1e-9 and high == math.inf:
-        wanted = "more than zero"
-    elif high == math.inf:
-        wanted = f"{low_u:.6g}{symbol} or more"
-    else:
-        wanted = f"{low_u:.6g} to {high_u:.6g}{symbol}"
+    wanted = _range_text(column, bounds, unit)
     return f"a possible value: {wanted}", "check the value and the unit in the heading"
 
 
@@ -319,11 +338,14 @@ def _number(item: _Placed, decimal_comma: bool) -> Convert:
             raise _Fault(
                 quoted(text), f"{wanted}; limits are not taken here", "leave it empty and say why in remarks"
             )
-        if decimal_comma and "," in text:
-            if "." in text or text.count(",") > 1:
-                raise _Fault(
-                    quoted(text), f"{wanted} without thousands separators", "take the separators out"
-                )
+        if decimal_comma and "." in text and not _DATE.fullmatch(text):
+            raise _Fault(
+                quoted(text),
+                f"{wanted} with a decimal comma, as asked for, and no other mark",
+                "write a comma for the point and take thousands separators out, "
+                "or load without --decimal-comma",
+            )
+        if decimal_comma and text.count(",") == 1:
             text = text.replace(",", ".")
         if not _NUMBER.fullmatch(text):
             raise _Fault(quoted(str(cell)), wanted, _number_hint(text))
@@ -357,20 +379,20 @@ def _whole(cell: Cell) -> int:
         not isinstance(cell, bool)
         and isinstance(cell, (int, float))
         and float(cell).is_integer()
-        and cell >= 1
+        and 1 <= cell <= _LARGEST_REPEAT
     ):
         return int(cell)
-    if isinstance(cell, str) and re.fullmatch(r"[1-9]\d{0,5}", cell):
+    if isinstance(cell, str) and re.fullmatch(r"[1-9][0-9]{0,5}", cell):
         return int(cell)
     raise _Fault(quoted(text), "a whole number from 1 on", "type 1, 2, 3 …, or leave it empty")
 
 
 def _choice(column: Column) -> Convert:
-    known = {_normal(c): c for c in column.choices}
+    known = {_plain(c): c for c in column.choices}
     listed = ", ".join(column.choices)
 
     def one(text: str) -> str:
-        found = known.get(_normal(text)) or known.get(_normal(text.replace("_", " ").replace("-", " ")))
+        found = known.get(_plain(text))
         if found is None:
             hint = did_you_mean(text, column.choices)
             raise _Fault(
@@ -383,7 +405,7 @@ def _choice(column: Column) -> Convert:
             cell = str(int(cell))
         if not isinstance(cell, str):
             raise _Fault(quoted(_shown(cell)), f"one of: {listed}", "type the word")
-        if column.entry == "choice":
+        if column.entry == "choice" or not cell.strip(" ,;+"):
             return one(cell)
         words = [one(part.strip()) for part in re.split(r"[,;+]", cell) if part.strip()]
         return ", ".join(c for c in column.choices if c in words)
@@ -397,12 +419,15 @@ def _text(column: Column) -> Convert:
 
     def convert(cell: Cell) -> str:
         if isinstance(cell, str):
-            return cell
+            name = _UNSEEN.sub("", _NO_BREAK.sub(" ", cell)).strip() if is_name else cell
+            if not name:
+                raise _Fault("a cell of invisible characters", wanted, "type it anew")
+            return name
         if isinstance(cell, bool):
             return _shown(cell).upper()
         if isinstance(cell, (datetime, date, time, Percent)):
             raise _Fault(
-                f"{_shown(cell)}",
+                ("" if isinstance(cell, Percent) else "the date ") + _shown(cell),
                 wanted,
                 "the spreadsheet program changed what was typed: format the column as text and type it anew",
             )
@@ -420,36 +445,37 @@ def _text(column: Column) -> Convert:
 
 
 def _moment(cell: Cell) -> str:
-    if isinstance(cell, datetime):
-        plain = cell.hour == cell.minute == cell.second == cell.microsecond == 0
-        return cell.date().isoformat() if plain else cell.isoformat(timespec="auto")
-    if isinstance(cell, date):
-        return cell.isoformat()
-    text = _shown(cell)
-    if isinstance(cell, str) and _DATE.fullmatch(text):
+    """A date, with its time where it is not midnight, in one writing however it was typed."""
+    moment: date | None = cell if isinstance(cell, date) else None
+    if isinstance(cell, str) and _DATE.fullmatch(cell):
         try:
-            moment = datetime.fromisoformat(text)
+            moment = datetime.fromisoformat(cell)
         except ValueError:
             moment = None
-        if moment is not None:
-            return text.replace(" ", "T")
-    raise _Fault(quoted(text), "a date such as 2026-03-14 or 2026-03-14T09:30", "write year, month, day")
+    if moment is None:
+        raise _Fault(
+            quoted(_shown(cell)), "a date such as 2026-03-14 or 2026-03-14T09:30", "write year, month, day"
+        )
+    if not isinstance(moment, datetime):
+        return moment.isoformat()
+    if moment.time() == time():
+        return moment.date().isoformat()
+    return moment.isoformat(timespec="auto" if moment.second or moment.microsecond else "minutes")
 
 
-def _complete(row: Row, given: set[str], problems: list[Problem]) -> None:
-    """Required cells, either/or groups, defaults of words."""
+def _complete(row: Row, excused: set[str], whole: bool, problems: list[Problem]) -> None:
+    """Required cells, either/or groups (where the headings are `whole`), defaults of words, units."""
     sheet = row.sheet
 
     def has(name: str) -> bool:
         column = sheet.column(name)
-        if column.refers:
-            return name in row.names
-        return any(f in row.values for f in column.fields)
+        return name in row.names or name in row.unusable or any(f in row.values for f in column.fields)
 
     for column in sheet.columns:
         if column.repeated:
             _close_ranks(row.values, column)
-        if column.required and not has(column.name):
+        if column.required and column.name not in excused and not has(column.name):
+            row.unusable.add(column.name)
             problems.append(
                 row.problem(
                     column.heading, "an empty cell", f"'{column.name}', which must be filled in", "fill it in"
@@ -457,12 +483,11 @@ def _complete(row: Row, given: set[str], problems: list[Problem]) -> None:
             )
         if column.default and column.choices and column.field not in row.values:
             row.values[column.field] = column.default
-    for group in sheet.either:
+    for group in sheet.either if whole else ():
         if not any(all(has(n) for n in names) for names in group):
             wanted = ", or ".join(" with ".join(f"'{n}'" for n in names) for names in group)
             problems.append(row.problem("", "none of them complete", wanted, "fill in one of these"))
-    if sheet.kind == "instruments" and not problems:
-        _check_unit(row, problems)
+    _check_unit(row, problems)
 
 
 def _close_ranks(values: dict[str, Any], column: Column) -> None:
@@ -481,22 +506,33 @@ _MEASURES: Mapping[str, tuple[str, ...]] = {
 
 
 def _check_unit(row: Row, problems: list[Problem]) -> None:
-    typed = row.values.get("uncertainty_unit", "")
-    if _normal(typed) in {PERCENT_OF_READING, "%"}:
-        row.values["uncertainty_unit"] = PERCENT_OF_READING
+    """A unit in a cell must be one of what the row speaks of; it is kept in its own writing."""
+    if row.sheet.kind == "instruments":
+        field, about = "uncertainty_unit", row.values.get("measures", "")
+        kinds = _MEASURES.get(about, ())
+    elif row.sheet.kind == "certified values":
+        field, about = "unit", row.values.get("result", "")
+        kinds = (RESULTS[about].kind,) if about else ()
+    else:
         return
-    kinds = _MEASURES[row.values["measures"]]
+    typed = row.values.get(field)
+    if typed is None or not kinds:
+        return
+    takes_percent = row.sheet.kind == "instruments"
+    if takes_percent and _normal(typed) in {PERCENT_OF_READING, "%"}:
+        row.values[field] = PERCENT_OF_READING
+        return
     for kind in kinds:
         try:
-            row.values["uncertainty_unit"] = units.unit(typed, kind).symbol
+            row.values[field] = units.unit(typed, kind).symbol
         except units.UnitTrouble:
             continue
         return
+    accepted = ", ".join(
+        ([f"'{PERCENT_OF_READING}'"] if takes_percent else []) + list(units.accepted(kinds[0]))
+    )
     problems.append(
         row.problem(
-            "uncertainty unit",
-            quoted(typed),
-            f"'{PERCENT_OF_READING}' or a unit of {kinds[0]}: {', '.join(units.accepted(kinds[0]))}",
-            "write one of these",
+            field.replace("_", " "), quoted(typed), f"a unit for {about}: {accepted}", "write one of these"
         )
     )

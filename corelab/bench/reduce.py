@@ -6,6 +6,7 @@ derivatives of every result with respect to every reading can be had by a comple
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from typing import Any
@@ -14,10 +15,11 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from corelab.bench.gather import CalibrationRows, Readings, Texts, Tray, Whole, in_force
+from corelab.errors import Impossible
 from corelab.quantities import RESULTS
 from corelab.science import fluids, gas_flow, saturation, volumes
-from corelab.science.formula import Impossible, whole_tray
-from corelab.units import ATMOSPHERE_KPA
+from corelab.science.formula import ImpossibleValue, whole_tray
+from corelab.units import ATMOSPHERE_KPA, ZERO_CELSIUS_K
 
 Array = NDArray[Any]
 Mask = NDArray[np.bool_]
@@ -27,6 +29,8 @@ Mask = NDArray[np.bool_]
 CONSTANT_MASS = 0.001
 #: Saturations that sum to more than this are questioned: measured ones scatter by a few hundredths.
 MOST_SATURATION = 1.05
+#: Stresses, and mean pressures of steps, that lie this near are one (share).
+SAME_STRESS, SAME_PRESSURE = 0.005, 0.01
 
 BAROMETER_ASSUMED = "barometer assumed"
 TEMPERATURE_ASSUMED = "temperature assumed"
@@ -55,11 +59,10 @@ class Outcome:
             before = self.flags.get(text)
             self.flags[text] = where if before is None else before | where
 
-    def inherit(self, *others: Outcome) -> None:
+    def inherit(self, other: Outcome, where: Mask | bool = True) -> None:
         """Take over the doubts about what this was computed from (one value a plug on both sides)."""
-        for other in others:
-            for text, mask in other.flags.items():
-                self.flag(text, mask)
+        for text, mask in list(other.flags.items()):
+            self.flag(text, mask & where)
 
 
 def _texts(n: int, text: str = "") -> Texts:
@@ -77,16 +80,14 @@ def _mean_by(values: Array, at: Whole, n: int) -> Array:
     """Mean of what is there in each place; NaN where nothing is."""
     there = ~np.isnan(values.real)
     count = np.bincount(at[there], minlength=n)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return _sum_by(values[there], at[there], n) / np.where(count > 0, count, np.nan)
+    return _sum_by(values[there], at[there], n) / np.where(count > 0, count, np.nan)
 
 
 def _row_mean(columns: Array) -> Array:
     there = ~np.isnan(columns.real)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return np.where(there, columns, 0.0).sum(axis=1) / np.where(
-            there.any(axis=1), there.sum(axis=1), np.nan
-        )
+    count = np.where(there.any(axis=1), there.sum(axis=1), np.nan)
+    mean: Array = np.where(there, columns, 0.0).sum(axis=1) / count
+    return mean
 
 
 def _any_by(mask: ArrayLike, at: Whole, n: int) -> Mask:
@@ -104,7 +105,22 @@ def _first_text_by(texts: Texts, at: Whole, n: int) -> Texts:
 
 def tray(compute: Callable[..., Any], **columns: ArrayLike) -> tuple[Any, Texts]:
     """A formula over a tray; impossible rows become NaN and say what was wanted."""
-    result, refused = whole_tray(compute, columns)
+    midway: list[ImpossibleValue] = []
+    while True:
+        try:
+            result, refused = whole_tray(compute, columns)
+            break
+        except ImpossibleValue as trouble:  # of a value made on the way from absurd ones: not an argument
+            midway.append(trouble)
+            columns = {
+                name: values
+                if np.asarray(values).dtype.kind in "OU"
+                else np.where(trouble.where, np.nan, values)
+                for name, values in columns.items()
+            }
+    for late in midway:
+        for row in np.flatnonzero(np.broadcast_to(late.where, (len(refused),))):
+            refused[row][late.argument] = late.wanted
     reasons = np.array(
         ["; ".join(f"{_words(name)}: {wanted} expected" for name, wanted in row.items()) for row in refused],
         dtype=object,
@@ -171,7 +187,8 @@ class _Bench:
 
     def barometer(self, readings: Readings) -> tuple[Array, Mask]:
         """Barometer of each row [kPa], and where it is assumed."""
-        read = readings.number("barometric_pressure_kpa")
+        nowhere = np.full(len(readings), np.nan)  # a sheet without the column
+        read = readings.numbers.get("barometric_pressure_kpa", nowhere)
         setting = self.tray.barometer_kpa
         fallback = ATMOSPHERE_KPA if np.isnan(setting) else setting
         there = ~np.isnan(read)
@@ -189,15 +206,16 @@ class _Bench:
 
 
 def _absolute(readings: Readings, name: str, barometer: Array) -> Array:
-    gauge = np.nan_to_num(readings.number(f"{name}_gauge")) == 1.0
-    return readings.number(f"{name}_kpa") + np.where(gauge, barometer, 0.0)
+    return readings.number(f"{name}_kpa") + np.where(_gauge(readings, name), barometer, 0.0)
 
 
 def _gauge(readings: Readings, name: str) -> Mask:
     """Where a pressure was read on a gauge."""
-    return np.nan_to_num(readings.number(f"{name}_gauge")) == 1.0
+    gauge: Mask = np.nan_to_num(readings.number(f"{name}_gauge")) == 1.0
+    return gauge
 
 
+@np.errstate(invalid="ignore", divide="ignore", over="ignore")  # what is missing is NaN and flows through
 def reduce(tray_: Tray) -> list[Outcome]:
     """All results of a tray of plugs."""
     bench = _Bench.of(tray_)
@@ -216,6 +234,11 @@ def reduce(tray_: Tray) -> list[Outcome]:
         *_liquid_permeability(bench, shape),
         *fluid,
     ]
+    for outcome in outcomes:
+        endless = np.isinf(outcome.value)
+        outcome.value = np.where(endless, np.nan, outcome.value)
+        outcome.reason[endless] = "the readings are too far apart to give a number"
+        outcome.flags = {text: mask & ~endless for text, mask in outcome.flags.items()}
     _mark_not_measured(bench, outcomes)
     _mark_implausible(outcomes)
     return outcomes
@@ -244,7 +267,7 @@ def _shape(bench: _Bench) -> _Shape:
 
     length, diameter = mean("length"), mean("diameter")
     net_length = length - bench.screen_cm
-    measured_length = np.where(bench.jacket_volume_cm3 > 0, length, net_length)
+    measured_length = np.where(bench.jacket_volume_cm3.real > 0, length, net_length)
     gross, refused = tray(volumes.caliper_bulk_volume_cm3, length_cm=measured_length, diameter_cm=diameter)
     bulk = gross - bench.jacket_volume_cm3
     sound = bulk.real > 0
@@ -292,7 +315,10 @@ def _masses(bench: _Bench) -> _Masses:
     full = is_received & ~np.isnan(density)
     full_received = _mean_by(net[full], at[full], n)
     taken = np.isnan(saturated.real) & ~np.isnan(full_received.real)
-    order = np.argsort(np.where(is_dry, 0, np.where(is_wet, 1, 2)), kind="stable")
+    # What is said of the salt beside the newest dry weighing counts before what other rows say.
+    newest = np.argsort(readings.text("measured_on").astype(str), kind="stable")[::-1]
+    rank = np.where(is_dry, 0, np.where(is_wet, 1, 2))
+    order = newest[np.argsort(rank[newest], kind="stable")]
     salt_words = readings.text("salt")
     salt_words = np.where(salt_words == "none", "", salt_words)
     return _Masses(
@@ -309,16 +335,19 @@ def _masses(bench: _Bench) -> _Masses:
 
 
 def _constant_mass(mass: Array, at: Whole, date: Texts, n: int) -> tuple[Array, Mask]:
-    """The last day's mean that differs from the day before by no more than the criterion, else the last."""
+    """The last weighing that differs from the one before by no more than the criterion, else the last.
+
+    Repeats at one time are one weighing, their mean.
+    """
     chosen = np.full(n, np.nan, dtype=mass.dtype)
     not_constant = np.zeros(n, dtype=np.bool_)
     if not len(mass):
         return chosen, not_constant
-    days = np.array([d[:10] for d in date], dtype=object).astype(str)
-    order = np.lexsort((days, at))
-    at_s, day_s, mass_s = at[order], days[order], mass[order]
+    times = date.astype(str)
+    order = np.lexsort((times, at))
+    at_s, time_s, mass_s = at[order], times[order], mass[order]
     new = np.ones(len(order), dtype=np.bool_)
-    new[1:] = (at_s[1:] != at_s[:-1]) | (day_s[1:] != day_s[:-1])
+    new[1:] = (at_s[1:] != at_s[:-1]) | (time_s[1:] != time_s[:-1])
     weighing = np.cumsum(new) - 1
     place = at_s[new]
     mean = _mean_by(mass_s, weighing, len(place))
@@ -329,7 +358,7 @@ def _constant_mass(mass: Array, at: Whole, date: Texts, n: int) -> tuple[Array, 
     change = np.abs((mean.real - before.real) / mean.real)
     constant = ~first & (change <= CONSTANT_MASS)
     chosen[place[last]] = mean[last]  # else the last
-    chosen[place[constant]] = mean[constant]  # ascending by day: the last one written stays
+    chosen[place[constant]] = mean[constant]  # ascending in time: the last one written stays
     several = _any_by(~first, place, n)
     not_constant = several & ~_any_by(constant, place, n)
     return chosen, not_constant
@@ -393,13 +422,14 @@ class _Volumes:
     outcomes: list[Outcome]
 
 
-def _immersed(bench: _Bench) -> tuple[Array, Texts, Texts, Mask]:
-    """Bulk volume by immersion: value, how, reason, where the liquid's temperature is assumed."""
+def _immersed(bench: _Bench) -> tuple[Array, Texts, Texts, Mask, Mask]:
+    """Bulk volume by immersion: value, how, reason, where the temperature is assumed, where rows failed."""
     readings, n = bench.kind("immersion"), bench.n
     temperature, assumed = bench.temperature(readings)
     liquid = readings.text("liquid")
     density = readings.number("liquid_density_g_cm3")
     given = ~np.isnan(density)
+    table = np.full(len(density), np.nan, dtype=np.result_type(density, temperature))
     for name, compute in (
         ("mercury", fluids.mercury_density_g_cm3),
         ("water", fluids.water_density_g_cm3),
@@ -408,8 +438,8 @@ def _immersed(bench: _Bench) -> tuple[Array, Texts, Texts, Mask]:
     ):
         here = (liquid == name) & ~given
         if here.any():
-            found, _ = tray(compute, temperature_degc=temperature[here])
-            density[here] = found
+            table[here], _ = tray(compute, temperature_degc=temperature[here])
+    density = np.where(given, density, table)
     displaced, why_displaced = tray(
         volumes.displaced_bulk_volume_cm3,
         mass_displaced_g=readings.number("mass_displaced_g"),
@@ -422,8 +452,7 @@ def _immersed(bench: _Bench) -> tuple[Array, Texts, Texts, Mask]:
         liquid_density_g_cm3=density,
     )
     coating_mass = readings.number("coating_mass_g")
-    with np.errstate(invalid="ignore", divide="ignore"):
-        coating = coating_mass / readings.number("coating_density_g_cm3")
+    coating = coating_mass / readings.number("coating_density_g_cm3")
     coating = np.where(np.isnan(coating_mass), 0.0, coating)
     bulk = (
         np.where(np.isnan(displaced.real), hung, displaced) - coating - bench.jacket_volume_cm3[readings.at]
@@ -435,29 +464,39 @@ def _immersed(bench: _Bench) -> tuple[Array, Texts, Texts, Mask]:
     )
     reason = np.where(np.isnan(coating), "a coating without its density", reason)
     value = _mean_by(bulk, readings.at, n)
-    how = _first_text_by(np.where(np.isnan(hung.real), "displacement", "buoyancy"), readings.at, n)
-    return value, how, _first_text_by(reason, readings.at, n), _any_by(assumed & ~given, readings.at, n)
+    by = np.where(np.isnan(displaced.real), "buoyancy", "displacement")
+    how = _first_text_by(np.where(np.isnan(bulk.real), "", by), readings.at, n)
+    return (
+        value,
+        how,
+        _first_text_by(reason, readings.at, n),
+        _any_by(assumed & ~given, readings.at, n),
+        _any_by(np.isnan(bulk.real), readings.at, n),
+    )
 
 
-_HOLDER = "holder"
+_CUP, _HOLDER = "cup", "holder"
 
 
-def _expanded(
-    bench: _Bench, kind: str, setup: str
-) -> tuple[Array, Texts, Mask, list[tuple[Mask, CalibrationRows]]]:
+def _expanded(bench: _Bench, kind: str, setup: str) -> tuple[Array, Texts, Mask]:
     """Row volumes by gas expansion with the calibration in force: value, reason, barometer assumed."""
     readings = bench.kind(kind)
     rows = len(readings)
-    value = np.full(rows, np.nan)
+    value = np.full(rows, np.nan + 0j)  # complex for the while: the calibration may be so, too
     reason = _texts(rows)
     barometer, assumed = bench.barometer(readings)
+    warmer = np.ones(rows)
+    if setup == _CUP:
+        # The gas of the reference chamber expands into a cup of another temperature, where both are read.
+        chamber, cup = readings.number("temperature_degc"), readings.number("cup_temperature_degc")
+        ratio = (cup + ZERO_CELSIUS_K) / (chamber + ZERO_CELSIUS_K)
+        warmer = np.where(np.isnan(ratio), 1.0, ratio)
     first = _absolute(readings, "reference_pressure", barometer)
     second = _absolute(readings, "expanded_pressure", barometer)
     moved = assumed & ~(_gauge(readings, "reference_pressure") & _gauge(readings, "expanded_pressure"))
     dates = readings.text("measured_on")
     instruments = readings.number("instrument_id").astype(np.intp)
-    reported = kind == "grain volume" and ~np.isnan(readings.number("grain_volume_cm3"))
-    used: dict[str, tuple[list[int], CalibrationRows]] = {}
+    used: dict[int, tuple[list[int], CalibrationRows]] = {}
     for row in range(rows):
         if np.isnan(second[row].real):
             continue
@@ -465,12 +504,10 @@ def _expanded(
         if isinstance(choice, str):
             reason[row] = f"no calibration in force: {choice}"
             continue
-        used.setdefault(f"{choice.instrument_id} {choice.name} {choice.date}", ([], choice))[0].append(row)
-    chosen: list[tuple[Mask, CalibrationRows]] = []
+        used.setdefault(id(choice), ([], choice))[0].append(row)
     for places, calibration in used.values():
         here = np.zeros(rows, dtype=np.bool_)
         here[places] = True
-        chosen.append((here, calibration))
         fitted = _calibrate(bench, calibration, setup)
         if isinstance(fitted, str):
             reason[here] = f"the calibration '{calibration.name}' cannot be used: {fitted}"
@@ -480,7 +517,7 @@ def _expanded(
             "reference_pressure_kpa": first[here],
             "expanded_pressure_kpa": second[here],
             "barometric_pressure_kpa": barometer[here],
-            "reference_volume_cm3": reference,
+            "reference_volume_cm3": reference * warmer[here],
         }
         if setup == _HOLDER:
             value[here], reason[here] = tray(
@@ -496,17 +533,20 @@ def _expanded(
             )
         moved = moved | (here & moved_by_calibration)
     if kind == "grain volume":
+        reported = ~np.isnan(readings.number("grain_volume_cm3"))
         own = readings.number("grain_volume_cm3") - np.nan_to_num(readings.number("container_volume_cm3"))
-        own = np.where(own > 0, own, np.nan)
+        own = np.where(own.real > 0, own, np.nan)
         moved = moved & ~reported
-        reason = np.where(np.isnan(own), reason, "")
+        reason = np.where(reported, "", reason)
+        reason[reported & np.isnan(own)] = "the container is not smaller than the volume measured"
         value = np.where(np.isnan(own), value, own)
-    return value, reason, moved, chosen
+    value = value if value.imag.any() else value.real
+    return value, reason, moved
 
 
 def _calibrate(bench: _Bench, calibration: CalibrationRows, setup: str) -> tuple[Any, Any, bool] | str:
     """Reference volume, cup or dead volume, and whether an assumed barometer moves them; or why not."""
-    readings = Readings(calibration.frame, np.zeros(len(calibration.frame), dtype=np.intp))
+    readings = calibration.readings
     barometer, assumed = bench.barometer(readings)
     compute = volumes.calibrate_holder if setup == _HOLDER else volumes.calibrate_cup
     try:
@@ -524,13 +564,13 @@ def _calibrate(bench: _Bench, calibration: CalibrationRows, setup: str) -> tuple
 
 def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Volumes:
     n = bench.n
-    immersed, how_immersed, why_immersed, temperature_assumed = _immersed(bench)
+    immersed, how_immersed, why_immersed, temperature_assumed, immersion_failed = _immersed(bench)
     by_immersion = ~np.isnan(immersed.real)
     bulk_value = np.where(by_immersion, immersed, shape.bulk_volume_cm3)
     bulk_basis = np.where(by_immersion, how_immersed, "caliper").astype(object)
 
     readings = bench.kind("grain volume")
-    rows, why_rows, moved_rows, _ = _expanded(bench, "grain volume", "cup")
+    rows, why_rows, moved_rows = _expanded(bench, "grain volume", _CUP)
     gross = _mean_by(rows, readings.at, n)
     grain_value = gross - bench.jacket_volume_cm3 - salt.volume_cm3
     grain_value = np.where(grain_value.real > 0, grain_value, np.nan)
@@ -538,9 +578,13 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
     grain_basis = np.where(reported, "reported", "gas expansion").astype(object)
 
     by_liquid, why_liquid = _liquid_filled(bench, masses)
+    by_gas, why_gas, moved_by_gas = _unstressed(bench)
+    gassed = ~np.isnan(by_gas.real)
+    pore_read = np.where(gassed, by_gas, by_liquid)
+    why_pore = np.where(why_liquid == "", why_gas, why_liquid)
 
     # The order of preference: bulk-grain, bulk-pore, pore-grain, then summation of fluids.
-    has_bulk, has_grain, has_pore = (~np.isnan(v.real) for v in (bulk_value, grain_value, by_liquid))
+    has_bulk, has_grain, has_pore = (~np.isnan(v.real) for v in (bulk_value, grain_value, pore_read))
     routes: list[tuple[str, Mask, Callable[..., Any], dict[str, ArrayLike]]] = [
         (
             "bulk-grain",
@@ -552,16 +596,19 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
             "bulk-pore",
             has_bulk & has_pore,
             volumes.porosity_bulk_pore_frac,
-            {"bulk_volume_cm3": bulk_value, "pore_volume_cm3": by_liquid},
+            {"bulk_volume_cm3": bulk_value, "pore_volume_cm3": pore_read},
         ),
         (
             "pore-grain",
             has_pore & has_grain,
             volumes.porosity_pore_grain_frac,
-            {"pore_volume_cm3": by_liquid, "grain_volume_cm3": grain_value},
+            {"pore_volume_cm3": pore_read, "grain_volume_cm3": grain_value},
         ),
     ]
-    porosity_value = np.full(n, np.nan, dtype=np.result_type(bulk_value, grain_value, by_liquid))
+    summed = _summation(bench)
+    porosity_value = np.full(
+        n, np.nan, dtype=np.result_type(bulk_value, grain_value, pore_read, summed.porosity)
+    )
     route = _texts(n)
     refused = _texts(n)
     for name, able, compute, columns in routes:
@@ -569,21 +616,21 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
         use = able & (route == "") & ~np.isnan(found.real)
         porosity_value[use], route[use] = found[use], name
         refused = np.where((route == "") & able & (refused == "") & (why != ""), why, refused)
-    summed = _summation(bench)
     use = (route == "") & ~np.isnan(summed.porosity.real)
     porosity_value[use], route[use] = summed.porosity[use], "summation of fluids"
 
-    pore_value = np.where(route == "bulk-grain", bulk_value - grain_value, by_liquid)
+    pore_value = np.where(route == "bulk-grain", bulk_value - grain_value, pore_read)
     pore_value = np.where(
         (route == "summation of fluids") & has_bulk, porosity_value * bulk_value, pore_value
     )
-    pore_basis = np.where(route == "bulk-grain", "bulk less grain", "saturation").astype(object)
+    pore_basis = np.where(gassed, "gas expansion", "saturation").astype(object)
+    pore_basis = np.where(route == "bulk-grain", "bulk less grain", pore_basis)
     pore_basis = np.where(route == "summation of fluids", "summation of fluids", pore_basis)
     derived_bulk = ~has_bulk & has_pore & has_grain
-    bulk_value = np.where(derived_bulk, by_liquid + grain_value, bulk_value)
+    bulk_value = np.where(derived_bulk, pore_read + grain_value, bulk_value)
     bulk_basis = np.where(derived_bulk, "pore and grain", bulk_basis)
-    derived_grain = ~has_grain & has_bulk & has_pore & (by_liquid.real < bulk_value.real)
-    grain_value = np.where(derived_grain, bulk_value - by_liquid, grain_value)
+    derived_grain = ~has_grain & has_bulk & has_pore & (pore_read.real < bulk_value.real)
+    grain_value = np.where(derived_grain, bulk_value - pore_read, grain_value)
     grain_basis = np.where(derived_grain, "bulk less pore", grain_basis)
 
     no_immersion = ~_any_by(np.ones(len(bench.kind("immersion")), bool), bench.kind("immersion").at, n)
@@ -602,6 +649,7 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
         bulk_basis,
     )
     bulk.flag(TEMPERATURE_ASSUMED, by_immersion & temperature_assumed)
+    bulk.flag("some immersion readings not used", immersion_failed)
     grain = bench.outcome(
         "grain volume",
         grain_value,
@@ -609,8 +657,8 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
             grain_value,
             _first_text_by(why_rows, readings.at, n),
             (no_grain, "no readings"),
-            (salt.volume_cm3.real > 0, "the salt left is more than the volume measured"),
-            otherwise="jacket and container are more than the volume measured",
+            (gross.real > bench.jacket_volume_cm3.real, "the salt left is more than the volume measured"),
+            otherwise="the jacket is not smaller than the volume measured",
         ),
         grain_basis,
     )
@@ -626,7 +674,7 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
         _why(
             pore_value,
             refused,
-            why_liquid,
+            why_pore,
             (~has_bulk & ~has_grain & ~has_pore, "no readings"),
             (~has_grain & has_bulk, "no grain volume"),
             (~has_bulk & has_grain, "no bulk volume"),
@@ -635,7 +683,9 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
         pore_basis,
     )
     uses_pore = np.isin(route, ["bulk-pore", "pore-grain"])
-    pore.flag("mass as received taken as saturated", masses.saturated_taken_from_received & uses_pore)
+    from_received = masses.saturated_taken_from_received & ~gassed
+    pore.flag("mass as received taken as saturated", from_received & uses_pore)
+    pore.flag(BAROMETER_ASSUMED, moved_by_gas & uses_pore)
     porosity = bench.outcome(
         "porosity",
         porosity_value,
@@ -665,10 +715,24 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
     dry.flag("not dried to constant mass", masses.dry_not_constant)
     dry.flag("corrected for salt left", salt.mass_g.real > 0)
     dry.flag("salt left not corrected: amount unknown", salt.unknown)
-    with np.errstate(invalid="ignore"):
-        for outcome in (pore, porosity):
-            outcome.inherit(bulk, grain)
-        porosity.inherit(pore)
+    bulk_grain, bulk_pore, pore_grain, summation = (
+        route == name for name in ("bulk-grain", "bulk-pore", "pore-grain", "summation of fluids")
+    )
+    for heir, source, where in (
+        (bulk, pore, derived_bulk),
+        (bulk, grain, derived_bulk),
+        (grain, pore, derived_grain),
+        (grain, bulk, derived_grain),
+        (pore, bulk, bulk_grain | summation),
+        (pore, grain, bulk_grain),
+        (porosity, bulk, bulk_grain | bulk_pore),
+        (porosity, grain, bulk_grain | pore_grain),
+        (porosity, pore, bulk_pore | pore_grain),
+    ):
+        heir.inherit(source, where)
+    too_large = has_bulk & has_grain & ~bulk_grain
+    for outcome in (pore, porosity):
+        outcome.flag("grain volume not less than the bulk volume", too_large)
     grain_density = _density(bench, "grain density", volumes.grain_density_g_cm3, dry, grain)
     bulk_density = _density(bench, "bulk density", volumes.bulk_density_g_cm3, dry, bulk)
     return _Volumes(
@@ -678,6 +742,19 @@ def _volumes(bench: _Bench, shape: _Shape, masses: _Masses, salt: _Salt) -> _Vol
         dry,
         porosity,
         [bulk, grain, pore, dry, porosity, grain_density, bulk_density],
+    )
+
+
+def _unstressed(bench: _Bench) -> tuple[Array, Texts, Mask]:
+    """Pore volume by gas expansion in a holder without net stress: value, reason, barometer assumed."""
+    readings, n = bench.kind("pore volume"), bench.n
+    rows, why, moved = _expanded(bench, "pore volume", _HOLDER)
+    free = readings.number("net_confining_stress_mpa").real == 0.0
+    used = free & ~np.isnan(rows.real)
+    return (
+        _mean_by(np.where(free, rows, np.nan), readings.at, n),
+        _first_text_by(np.where(free, why, ""), readings.at, n),
+        _any_by(moved & used, readings.at, n),
     )
 
 
@@ -730,18 +807,21 @@ def _density(
             otherwise="",
         ),
     )
-    outcome.inherit(mass, volume)
+    outcome.inherit(mass)
+    outcome.inherit(volume)
     return outcome
 
 
 def _stressed(bench: _Bench, volume: _Volumes) -> list[Outcome]:
     """Pore volume under stress in the holder, and the porosity and bulk volume that go with it."""
     readings = bench.kind("pore volume")
-    if not len(readings):
+    stress = readings.number("net_confining_stress_mpa").real
+    under = stress > 0.0
+    if not under.any():
         return []
-    rows, why_rows, moved, _ = _expanded(bench, "pore volume", _HOLDER)
-    stress = readings.number("net_confining_stress_mpa")
-    places, group = _groups(readings.at, stress.round(9))
+    rows, why_rows, moved = _expanded(bench, "pore volume", _HOLDER)
+    rows, why_rows, moved = rows[under], why_rows[under], moved[under]
+    places, group = _groups(readings.at[under], stress[under].round(9))
     at, at_stress = places[0].astype(np.intp), places[1]
     m = len(at)
     pore = _mean_by(rows, group, m)
@@ -751,14 +831,21 @@ def _stressed(bench: _Bench, volume: _Volumes) -> list[Outcome]:
         volumes.porosity_pore_grain_frac, pore_volume_cm3=pore, grain_volume_cm3=grain
     )
     no_grain = (np.isnan(grain.real), "no grain volume")
+    # Without grains, the bulk volume at rest stands in for that under stress, which is a little smaller.
+    at_rest, _ = tray(
+        volumes.porosity_bulk_pore_frac, bulk_volume_cm3=volume.bulk.value[at], pore_volume_cm3=pore
+    )
+    by_bulk = no_grain[0] & ~np.isnan(at_rest.real)
+    porosity = np.where(by_bulk, at_rest, porosity)
+    route = np.where(by_bulk, "bulk-pore", "pore-grain").astype(object)
 
-    def outcome(quantity: str, value: Array, basis: str, *reasons: Any) -> Outcome:
+    def outcome(quantity: str, value: Array, basis: str | Texts, *reasons: Any) -> Outcome:
         made = Outcome(
             quantity,
             at,
             value,
             _why(value, *reasons, otherwise="no pore volume under stress"),
-            _texts(m, basis),
+            _texts(m, basis) if isinstance(basis, str) else basis,
             stress_mpa=at_stress,
         )
         made.flag(BAROMETER_ASSUMED, _any_by(moved, group, m))
@@ -766,12 +853,17 @@ def _stressed(bench: _Bench, volume: _Volumes) -> list[Outcome]:
 
     made = [
         outcome("pore volume", pore, "gas expansion", why),
-        outcome("porosity", porosity, "pore-grain", why, no_grain, why_porosity),
+        outcome("porosity", porosity, route, why, (no_grain[0], "no grain or bulk volume"), why_porosity),
         outcome("bulk volume", pore + grain, "pore and grain", why, no_grain),
     ]
     for item in made[1:]:
         for text, mask in volume.grain.flags.items():
             item.flag(text, mask[at])
+    for text, mask in volume.bulk.flags.items():
+        made[1].flag(text, mask[at] & by_bulk)
+    made[1].flag("bulk volume not under stress", by_bulk)
+    for item in made:
+        item.flag("some pore volume readings not used", _any_by(why_rows != "", group, m))
     return made
 
 
@@ -780,23 +872,24 @@ def _groups(*columns: ArrayLike) -> tuple[list[Array], Whole]:
     import pandas as pd
 
     frame = pd.DataFrame({i: np.asarray(c) for i, c in enumerate(columns)})
-    group = frame.groupby(list(frame.columns), sort=True, dropna=False).ngroup().to_numpy(dtype=np.intp)
+    group = np.asarray(frame.groupby(list(frame.columns), sort=True, dropna=False).ngroup(), dtype=np.intp)
     first = frame.assign(group=group).drop_duplicates("group").sort_values("group")
     return [first[i].to_numpy() for i in range(len(columns))], group
 
 
-def _flow_ends(bench: _Bench, readings: Readings) -> tuple[Array, Array, Array, Mask]:
-    """Upstream, downstream and barometric pressure [kPa absolute], and where the barometer is assumed."""
-    barometer, assumed = bench.barometer(readings)
+def _flow_ends(readings: Readings, barometer: Array) -> tuple[Array, Array, Mask, Mask]:
+    """Upstream and downstream pressure [kPa absolute], and on which of them the barometer bears."""
     downstream = _absolute(readings, "downstream_pressure", barometer)
     no_downstream = np.isnan(downstream)
     downstream = np.where(no_downstream, barometer, downstream)
     upstream = _absolute(readings, "upstream_pressure", barometer)
-    gauge_used = _gauge(readings, "upstream_pressure") | _gauge(readings, "downstream_pressure")
-    if "pressure_difference_kpa" in readings.frame:
-        difference = readings.number("pressure_difference_kpa")
-        upstream = np.where(np.isnan(upstream), downstream + difference, upstream)
-    return upstream, downstream, barometer, assumed & (no_downstream | gauge_used)
+    end_bears = no_downstream | _gauge(readings, "downstream_pressure")
+    start_bears = _gauge(readings, "upstream_pressure")
+    if "pressure_difference_kpa" in readings.numbers:
+        by_difference = np.isnan(upstream)
+        upstream = np.where(by_difference, downstream + readings.number("pressure_difference_kpa"), upstream)
+        start_bears = np.where(by_difference, end_bears, start_bears)
+    return upstream, downstream, start_bears, end_bears
 
 
 def _gas_permeability(bench: _Bench, shape: _Shape) -> list[Outcome]:
@@ -810,28 +903,30 @@ def _gas_permeability(bench: _Bench, shape: _Shape) -> list[Outcome]:
 
 
 def _steady_state(bench: _Bench, shape: _Shape, readings: Readings) -> tuple[list[Outcome], list[Outcome]]:
-    at = readings.at
-    upstream, downstream, barometer, barometer_moves = _flow_ends(bench, readings)
-    temperature, temperature_assumed = bench.temperature(readings)
-    gas = readings.text("gas")
-    mean = (upstream + downstream) / 2.0
+    row_at, row_gas, row_direction = readings.at, readings.text("gas"), readings.text("direction")
+    barometer, assumed = bench.barometer(readings)
+    upstream, downstream, start_bears, end_bears = _flow_ends(readings, barometer)
+    row_temperature, temperature_assumed = bench.temperature(readings)
+    row_mean = (upstream + downstream) / 2.0
     viscosity, _ = tray(
-        fluids.gas_viscosity_mpas, gas=gas.astype(str), temperature_degc=temperature, pressure_kpa=mean
+        fluids.gas_viscosity_mpas,
+        gas=row_gas.astype(str),
+        temperature_degc=row_temperature,
+        pressure_kpa=row_mean,
     )
 
     standard = readings.text("flow_basis") == "standard"
     metered = _absolute(readings, "flow_pressure", barometer)
-    meter_at_barometer = np.isnan(metered) & ~standard
+    meter_bears = ~standard & (np.isnan(metered) | _gauge(readings, "flow_pressure"))
     metered = np.where(np.isnan(metered), barometer, metered)
     metered_t = readings.number("flow_temperature_degc")
-    metered_t = np.where(np.isnan(metered_t), temperature, metered_t)
+    metered_t = np.where(np.isnan(metered_t), row_temperature, metered_t)
     standard_p, standard_t = (
         readings.number("standard_pressure_kpa"),
         readings.number("standard_temperature_degc"),
     )
     metered = np.where(standard, np.where(np.isnan(standard_p), ATMOSPHERE_KPA, standard_p), metered)
     metered_t = np.where(standard, np.where(np.isnan(standard_t), 20.0, standard_t), metered_t)
-    moved = barometer_moves | (bench.barometer(readings)[1] & meter_at_barometer)
 
     flow, why_flow = tray(
         gas_flow.flow_rate_at_cm3_s,
@@ -839,13 +934,13 @@ def _steady_state(bench: _Bench, shape: _Shape, readings: Readings) -> tuple[lis
         flow_pressure_kpa=metered,
         flow_temperature_degc=metered_t,
         pressure_kpa=downstream,
-        temperature_degc=temperature,
+        temperature_degc=row_temperature,
     )
     factor = readings.number("geometric_factor")
-    length = shape.net_length_cm[at]
+    length = shape.net_length_cm[row_at]
     # k = 2 mu q p E/(L (p1² - p2²)): the factor stands for the length over which, the length for the area.
     special = ~np.isnan(factor)
-    k, why = tray(
+    row_k, why = tray(
         gas_flow.gas_permeability_md,
         flow_rate_cm3_s=flow,
         flow_pressure_kpa=downstream,
@@ -853,67 +948,78 @@ def _steady_state(bench: _Bench, shape: _Shape, readings: Readings) -> tuple[lis
         downstream_pressure_kpa=downstream,
         viscosity_mpas=viscosity,
         length_cm=np.where(special, factor, length),
-        area_cm2=np.where(special, length, shape.area_cm2[at]),
+        area_cm2=np.where(special, length, shape.area_cm2[row_at]),
     )
-    direction = readings.text("direction")
-    across = np.isin(direction, ["max", "90"]) & ~special
-    k = np.where(across, np.nan, k)
-    stress, stress_group, unstated = _net_stress(readings, barometer, mean)
-    no_shape = np.isnan(shape.area_cm2[at].real) & ~special
-    reason = _why(
-        k,
+    across = np.isin(row_direction, ["max", "90"]) & ~special
+    sound = (row_k.real > 0) & np.isfinite(row_k.real)  # absurd readings overflow
+    row_k = np.where(across | ~sound, np.nan, row_k)
+    no_shape = np.where(special, np.isnan(length.real), np.isnan(shape.area_cm2[row_at].real))
+    row_reason = _why(
+        row_k,
         (across, "flow across the core needs a geometric factor"),
         (no_shape, "no length and diameter"),
         why,
         why_flow,
         otherwise="the readings of the step are incomplete",
     )
-    step_names = readings.text("step")
-    places, group = _groups(at, direction, gas, stress_group)
+
+    net, sleeve, unstated = _net_stress(readings, barometer, row_mean)
+    _, own = _groups(row_at, row_direction, row_gas)
+    one_stress = _joined(_alike(net, own, SAME_STRESS), _alike(sleeve, own, SAME_STRESS))
+    places, line_of = _groups(row_at, row_direction, row_gas, one_stress)
     line_at = places[0].astype(np.intp)
     m = len(line_at)
     line_direction, line_gas = places[1].astype(object), places[2].astype(object)
-    line_stress = np.nan_to_num(_mean_by(stress, group, m))
-    line_unstated = _any_by(unstated, group, m)
+    line_stress = _mean_by(net, line_of, m).round(9)
 
-    labels = _step_labels(step_names, gas, readings, line_stress[group], at, direction)
-    gas_k = Outcome(
-        "gas permeability",
-        at,
-        k,
-        reason,
-        gas,
-        direction=direction,
-        stress_mpa=line_stress[group],
-        step=labels,
-    )
-    gas_k.flag(BAROMETER_ASSUMED, moved)
-    gas_k.flag(TEMPERATURE_ASSUMED, temperature_assumed)
-    gas_k.flag(STRESS_NOT_STATED, unstated)
-    mean_p = Outcome(
-        "mean pressure",
-        at,
-        mean,
-        _why(mean, otherwise="the readings of the step are incomplete"),
-        gas,
-        direction=direction,
-        stress_mpa=line_stress[group],
-        step=labels,
-    )
-    mean_p.flag(BAROMETER_ASSUMED, barometer_moves)
+    # Equal-key repeats are one step, their mean; what could not be computed does not enter it.
+    _, step_of = _groups(line_of, readings.text("step"), readings.text("measured_on"))
+    _, first = np.unique(step_of, return_index=True)
+    steps = len(first)
+    there = ~np.isnan(row_k.real)
+    counted = there | ~_any_by(there, step_of, steps)[step_of]
+
+    def by_step(column: Array) -> Array:
+        return _mean_by(np.where(counted, column, np.nan), step_of, steps)
+
+    k, mean, temperature = by_step(row_k), by_step(row_mean), by_step(row_temperature)
+    group, at, gas, direction = line_of[first], row_at[first], row_gas[first], row_direction[first]
+    labels = _step_labels(readings, first, group)
+    reason = _why(k, _first_text_by(row_reason, step_of, steps), otherwise="")
+
+    def outcome(quantity: str, value: Array, why_missing: Texts) -> Outcome:
+        return Outcome(
+            quantity,
+            at,
+            value,
+            why_missing,
+            gas,
+            direction=direction,
+            stress_mpa=line_stress[group],
+            step=labels,
+        )
+
+    gas_k = outcome("gas permeability", k, reason)
+    mean_p = outcome("mean pressure", mean, _why(mean, otherwise="the readings of the step are incomplete"))
+    moved = assumed & counted
+    for flagged, bears in ((gas_k, start_bears | end_bears | meter_bears), (mean_p, start_bears | end_bears)):
+        flagged.flag(BAROMETER_ASSUMED, _any_by(moved & bears, step_of, steps))
+    gas_k.flag(TEMPERATURE_ASSUMED, _any_by(temperature_assumed & counted, step_of, steps))
+    gas_k.flag(STRESS_NOT_STATED, _any_by(unstated & counted, step_of, steps))
+    gas_k.flag("confining pressure below the pore pressure", _any_by((net < 0.0) & counted, step_of, steps))
 
     good = ~np.isnan(k.real)
     line = _fit_lines(k, mean, temperature, gas, group, good, m)
     for text, mask in gas_k.flags.items():
         line.doubts[text] = _any_by(mask & good, group, m)
+    line.doubts["some steps not used"] = _any_by(~good, group, m)
     why_line = _first_text_by(reason, group, m)
-    flags = line.doubts
     made = []
     for quantity, value in (
         ("klinkenberg permeability", line.k_md),
         ("slip factor", line.slip_kpa),
     ):
-        outcome = Outcome(
+        of_line = Outcome(
             quantity,
             line_at,
             value,
@@ -923,51 +1029,64 @@ def _steady_state(bench: _Bench, shape: _Shape, readings: Readings) -> tuple[lis
             stress_mpa=line_stress,
             step=line_gas,
         )
-        for text, mask in flags.items():
-            outcome.flag(text, mask)
-        outcome.flag(STRESS_NOT_STATED, line_unstated)
-        made.append(outcome)
+        for text, mask in line.doubts.items():
+            of_line.flag(text, mask)
+        made.append(of_line)
     return [gas_k, mean_p], made
 
 
-def _net_stress(readings: Readings, barometer: Array, mean: Array) -> tuple[Array, Texts, Mask]:
-    """Net stress of each row [MPa], what its line is grouped by, and where it is not stated.
+def _net_stress(readings: Readings, barometer: Array, mean: Array) -> tuple[Array, Array, Mask]:
+    """Net stress of each row [MPa], 0 where not stated; the sleeve's pressure as read; where not stated.
 
     Where the confining pressure was read, the net stress is that less the mean pore pressure.
     """
-    stress = readings.number("net_confining_stress_mpa")
-    confining = _absolute(readings, "confining_pressure", barometer)
-    by_pressure = np.isnan(stress) & ~np.isnan(confining)
-    net = np.where(by_pressure, (confining - mean.real) / 1000.0, stress)
-    group = np.array(
+    stated = readings.number("net_confining_stress_mpa").real
+    confining = _absolute(readings, "confining_pressure", barometer).real
+    net = np.where(np.isnan(stated), (confining - mean.real) / 1000.0, stated)
+    sleeve = np.where(np.isnan(stated), readings.number("confining_pressure_kpa").real, np.nan)
+    return np.nan_to_num(net), sleeve, np.isnan(net)
+
+
+def _alike(values: Array, own: Whole, share: float) -> Whole:
+    """Numbers the values of each `own` that follow one another within `share`; NaN is like nothing."""
+    order = np.lexsort((values, own))
+    v, o = values[order], own[order]
+    new = np.ones(len(order), dtype=np.bool_)
+    new[1:] = (o[1:] != o[:-1]) | ~(np.diff(v) <= share * np.abs(v[1:]))
+    group = np.empty(len(order), dtype=np.intp)
+    group[order] = np.cumsum(new) - 1
+    return group
+
+
+def _joined(a: Whole, b: Whole) -> Whole:
+    """Groups that keep together what either of two groupings keeps together.
+
+    On a sleeve held at one pressure the net stress falls from step to step; with the net stress held, the
+    pressure rises. Both are one stress.
+    """
+    joined = a
+    while True:
+        before = joined
+        for group in (b, a):
+            least = np.full(len(group), len(group), dtype=np.intp)
+            np.minimum.at(least, group, joined)
+            joined = least[group]
+        if np.array_equal(joined, before):
+            return joined
+
+
+def _step_labels(readings: Readings, first: Whole, line: Whole) -> Texts:
+    """A label of its own for each step of a line: gas and step, and the date where it was made again."""
+    gas, names, dates = (readings.text(name)[first] for name in ("gas", "step", "measured_on"))
+    key = list(zip(line.tolist(), names, strict=True))
+    count = Counter(key)
+    return np.array(
         [
-            f"p {c:.6g}" if b else ("" if np.isnan(s) else f"s {s:.9g}")
-            for s, c, b in zip(stress, confining, by_pressure, strict=True)
+            f"{g} {name} {date}".strip() if count[k] > 1 else f"{g} {name}"
+            for g, name, date, k in zip(gas, names, dates, key, strict=True)
         ],
         dtype=object,
     )
-    return net, group, np.isnan(net)
-
-
-def _step_labels(
-    names: Texts, gas: Texts, readings: Readings, stress: Array, at: Whole, direction: Texts
-) -> Texts:
-    """A label of its own for each step of a plug, direction and stress: gas, step, and repeat or date."""
-    labels = np.array([f"{g} {s}" for g, s in zip(gas, names, strict=True)], dtype=object)
-    key = list(zip(at, direction, stress.round(9), labels, strict=True))
-    many = {k for k in key if key.count(k) > 1} if len(key) < 200 else _repeated(key)
-    dates, repeats = readings.text("measured_on"), readings.number("repeat")
-    numbers = readings.number("id")
-    for i, k in enumerate(key):
-        if k in many:
-            labels[i] = f"{labels[i]} {dates[i]} #{int(repeats[i])} ({int(numbers[i])})".replace("  ", " ")
-    return labels
-
-
-def _repeated(keys: Iterable[Any]) -> set[Any]:
-    from collections import Counter
-
-    return {key for key, count in Counter(keys).items() if count > 1}
 
 
 @dataclass(slots=True)
@@ -990,7 +1109,11 @@ def _fit_lines(
     doubts: dict[str, Mask] = {}
     if not good.any():
         return _Lines(k_line, slip, basis, reason, doubts)
-    fit = gas_flow.klinkenberg_regression(k[good], mean[good], group[good])
+    pressures = _alike(mean.real[good], group[good], SAME_PRESSURE)
+    _, one_each = np.unique(pressures, return_index=True)
+    enough = np.bincount(group[good][one_each], minlength=m) >= 3
+    fitted = good & enough[group]
+    fit = gas_flow.klinkenberg_regression(k[fitted], mean[fitted], group[fitted])
     size = len(fit.k_infinity_md)
     found = np.zeros(m, dtype=np.bool_)
     found[:size] = ~np.isnan(fit.k_infinity_md.real)
@@ -1027,11 +1150,11 @@ def _with_reported(bench: _Bench, lines: list[Outcome]) -> list[Outcome]:
     if not len(readings):
         return lines
     at, direction = readings.at, readings.text("direction")
-    stress = readings.number("net_confining_stress_mpa")
-    places, group = _groups(at, direction, np.where(np.isnan(stress), -1.0, stress.round(9)))
+    stress = readings.number("net_confining_stress_mpa").real
+    places, group = _groups(at, direction, np.nan_to_num(stress).round(9))
     line_at = places[0].astype(np.intp)
     m = len(line_at)
-    line_stress = np.where(places[2] < 0, 0.0, places[2])
+    line_stress = places[2]
     k, k_limit = (
         readings.number("klinkenberg_permeability_md"),
         readings.text("klinkenberg_permeability_limit"),
@@ -1040,7 +1163,7 @@ def _with_reported(bench: _Bench, lines: list[Outcome]) -> list[Outcome]:
     mean, gas = readings.number("mean_pressure_kpa"), readings.text("gas")
     temperature = np.full(len(readings), bench.tray.temperature_degc)
     from_gas = np.isnan(k) & ~np.isnan(gas_k) & ~np.isnan(mean) & (gas != "")
-    estimate = np.full(len(k), np.nan)
+    estimate = np.full(len(k), np.nan, dtype=np.result_type(gas_k, mean, temperature))
     if from_gas.any():
         estimate[from_gas], _ = tray(
             gas_flow.slip_corrected_md,
@@ -1074,12 +1197,11 @@ def _with_reported(bench: _Bench, lines: list[Outcome]) -> list[Outcome]:
         **common,
     )
     outcome.flag("slip estimated from a published law", line_estimated)
-    outcome.flag(STRESS_NOT_STATED, places[2] < 0)
+    outcome.flag(STRESS_NOT_STATED, _any_by(np.isnan(stress), group, m))
     for word in ("below", "above"):
         outcome.flag(f"klinkenberg permeability {word} limit", line_limit == word)
     slip = _mean_by(readings.number("slip_factor_kpa"), group, m)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        implied = _mean_by((gas_k / estimate - 1.0) * mean, group, m)
+    implied = _mean_by((gas_k / estimate - 1.0) * mean, group, m)
     estimated = np.isnan(slip) & ~np.isnan(implied)
     slip_out = Outcome(
         "slip factor",
@@ -1138,8 +1260,9 @@ def _liquid_permeability(bench: _Bench, shape: _Shape) -> list[Outcome]:
     if not len(readings):
         return []
     at = readings.at
-    frame = readings.frame.assign(barometric_pressure_kpa=np.nan)
-    upstream, downstream, _, moved = _flow_ends(bench, Readings(frame, at))
+    barometer, assumed = bench.barometer(readings)
+    upstream, downstream, start_bears, end_bears = _flow_ends(readings, barometer)
+    moved = assumed & (start_bears != end_bears)  # only the difference of the ends counts
     viscosity = readings.number("viscosity_mpas")
     k, why = tray(
         gas_flow.liquid_permeability_md,
@@ -1150,8 +1273,8 @@ def _liquid_permeability(bench: _Bench, shape: _Shape) -> list[Outcome]:
         length_cm=shape.net_length_cm[at],
         area_cm2=shape.area_cm2[at],
     )
-    stress = readings.number("net_confining_stress_mpa")
-    places, group = _groups(at, np.where(np.isnan(stress), -1.0, stress.round(9)))
+    stress = readings.number("net_confining_stress_mpa").real
+    places, group = _groups(at, np.nan_to_num(stress).round(9))
     m = len(places[0])
     value = _mean_by(k, group, m)
     reason = _why(
@@ -1167,9 +1290,9 @@ def _liquid_permeability(bench: _Bench, shape: _Shape) -> list[Outcome]:
         value,
         _why(value, _first_text_by(reason, group, m), otherwise="no step could be used"),
         _first_text_by(readings.text("liquid"), group, m),
-        stress_mpa=np.where(places[1] < 0, 0.0, places[1]),
+        stress_mpa=places[1],
     )
-    outcome.flag(STRESS_NOT_STATED, places[1] < 0)
+    outcome.flag(STRESS_NOT_STATED, _any_by(np.isnan(stress), group, m))
     outcome.flag(BAROMETER_ASSUMED, _any_by(moved, group, m))
     return [outcome]
 
@@ -1221,7 +1344,7 @@ def _saturations(bench: _Bench, masses: _Masses, volume: _Volumes) -> list[Outco
     salinity = np.where(fresh, 0.0, salinity)
     brine_density = readings.number("brine_density_g_cm3")
     computed, _ = tray(fluids.brine_density_g_cm3, salinity_g_kg=salinity, temperature_degc=temperature)
-    computed = np.where(salinity == 0.0, water_density, computed)
+    computed = np.where(salinity.real == 0.0, water_density, computed)
     brine_density = np.where(np.isnan(brine_density), computed, brine_density)
     water, _ = tray(
         saturation.water_mass_g,
@@ -1246,10 +1369,9 @@ def _saturations(bench: _Bench, masses: _Masses, volume: _Volumes) -> list[Outco
     )
     oil_density = readings.number("oil_density_g_cm3")
     brine_v = _mean_by(brine, at, n)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        oil_v = _mean_by(oil_mass / oil_density, at, n)
-        pore = np.where(volume.pore.value.real > 0, volume.pore.value, np.nan)
-        water_s, oil_s = brine_v / pore, oil_v / pore
+    oil_v = _mean_by(oil_mass / oil_density, at, n)
+    pore = np.where(volume.pore.value.real > 0, volume.pore.value, np.nan)
+    water_s, oil_s = brine_v / pore, oil_v / pore
     retort = _summation(bench)
     distilled = _any_by(np.ones(len(readings), bool), at, n)
     by_retort = ~distilled & ~np.isnan(retort.water.real)
@@ -1258,7 +1380,7 @@ def _saturations(bench: _Bench, masses: _Masses, volume: _Volumes) -> list[Outco
     gas_s = np.where(by_retort, retort.gas, 1.0 - water_s - oil_s)
     basis = np.where(by_retort, "retort", "distillation").astype(object)
     retorted = _any_by(np.ones(len(bench.kind("retort")), bool), bench.kind("retort").at, n)
-    no_pore = np.isnan(volume.pore.value.real)
+    no_pore = np.isnan(pore.real)
     why = _first_text_by(why_oil, at, n)
     made = []
     for quantity, value in (
@@ -1283,7 +1405,7 @@ def _saturations(bench: _Bench, masses: _Masses, volume: _Volumes) -> list[Outco
             _why(value, *reasons, otherwise="the readings are incomplete"),
             basis,
         )
-        outcome.inherit(volume.pore)
+        outcome.inherit(volume.pore, ~by_retort)
         outcome.flag("brine taken as fresh water", _any_by(fresh, at, n) & ~by_retort)
         outcome.flag("saturations sum beyond plausible limits", (water_s + oil_s).real > MOST_SATURATION)
         outcome.flag("saturation below zero", value.real < -0.02)
@@ -1335,8 +1457,7 @@ def _mark_not_measured(bench: _Bench, outcomes: list[Outcome]) -> None:
 def _mark_implausible(outcomes: list[Outcome]) -> None:
     for outcome in outcomes:
         low, high = RESULTS[outcome.quantity].plausible
-        with np.errstate(invalid="ignore"):
-            odd = (outcome.value.real < low) | (outcome.value.real > high)
+        odd = (outcome.value.real < low) | (outcome.value.real > high)
         outcome.flag(f"{outcome.quantity} outside the usual range", odd)
 
 
@@ -1390,8 +1511,8 @@ def rows(tray_: Tray, outcomes: Iterable[Outcome], versions: dict[str, int]) -> 
         stress = np.zeros(size) if o.stress_mpa is None else o.stress_mpa
         flags: list[list[str]] = [[] for _ in range(size)]
         for text, mask in o.flags.items():
-            for i in np.flatnonzero(mask):
-                flags[i].append(text)
+            for flagged in np.flatnonzero(mask):
+                flags[flagged].append(text)
         values = o.value.real
         for i in range(size):
             missing = bool(np.isnan(values[i]))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
@@ -124,20 +125,19 @@ def checked(name: str, typed: str) -> str:
 
         try:
             ZoneInfo(text)
-        except (ValueError, OSError) as wrong:
+        except (ValueError, OSError, KeyError) as wrong:
             raise Usage(
                 f"{quoted(text)} is not a time zone; write one such as Europe/Oslo or UTC."
             ) from wrong
         return text
     if not setting.kind:
         return text
-    number, _, symbol = text.partition(" ")
-    try:
-        value = float(number)
-    except ValueError as wrong:
-        raise Usage(f"'{setting.name}' takes a number in {setting.unit}; found {quoted(text)}.") from wrong
+    match = re.fullmatch(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*(.*)", text)
+    if match is None:
+        raise Usage(f"'{setting.name}' takes a number in {setting.unit}; found {quoted(text)}.")
+    value, symbol = float(match[1]), match[2]
     stored = units.unit(setting.unit, setting.kind)
-    if symbol.strip():
+    if symbol:
         value = float(units.convert(value, units.unit(symbol, setting.kind), stored))
     if not setting.low <= value <= setting.high:
         raise Usage(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import os
 import sys
 import traceback
@@ -15,6 +16,8 @@ from corelab.cli import show
 from corelab.errors import CorelabError, Refused, Usage, did_you_mean, quoted
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from corelab.bench.load import LoadReport
     from corelab.lab import Lab
 
@@ -46,6 +49,12 @@ _DECIMALS = {
     "oil saturation [v/v]": 3, "water saturation [v/v]": 3, "gas saturation [v/v]": 3,
     "porosity stress [MPa]": 1, "permeability stress [MPa]": 1, "recovery [%]": 1,
 }  # fmt: skip
+#: Columns of an interval that a narrow terminal shows first.
+_WANTED_FIRST = (
+    "plug", "depth", "flags", "porosity", "klinkenberg permeability", "facies", "water saturation",
+    "grain density", "source", "depth basis", "orientation", "gas permeability", "lithology",
+    "oil saturation", "crush verdict", "slip basis", "log depth", "run",
+)  # fmt: skip
 _LENGTHS = {
     f"{c} [{u}]": 2 for c in ("top depth", "base depth", "cut", "recovered", "lost") for u in ("m", "ft")
 }
@@ -67,7 +76,12 @@ Stress = Annotated[
     float | None, typer.Option(metavar="MPA", help="Net confining stress; else the lowest measured.")
 ]
 Uncertain = Annotated[bool, typer.Option("--with-uncertainty", help="Add the standard uncertainties.")]
-Format = Annotated[str, typer.Option("--format", metavar="table|csv|json|parquet", help="How to show it.")]
+Format = Annotated[
+    str,
+    typer.Option(
+        "--format", metavar="table|csv|json|parquet", help="How to show it; else as the file is named."
+    ),
+]
 TableOrJson = Annotated[str, typer.Option("--format", metavar="table|json", help="How to show it.")]
 Out = Annotated[
     Path | None, typer.Option("--out", metavar="FILE", help="Write to a file instead of the terminal.")
@@ -91,6 +105,26 @@ def _one_of(option: str, value: str, *allowed: str) -> str:
     if value not in allowed:
         raise Usage(f"{option} is one of {', '.join(allowed)}; found {quoted(value)}.")
     return value
+
+
+def _show(frame: pd.DataFrame, form: str, *, wrap: str = "") -> None:
+    if form == "json":
+        show.print_json(show.json_records(frame))
+    else:
+        show.print_table(frame, _DECIMALS | _LENGTHS, wrap=wrap)
+
+
+def _show_parts(parts: dict[str, pd.DataFrame], form: str, *, wrap: str) -> None:
+    """Several tables; as JSON one list, whose objects say of which `part` they are."""
+    if form == "json":
+        show.print_json(
+            [{"part": p, **row} for p, frame in parts.items() for row in show.json_records(frame)]
+        )
+        return
+    for part, frame in parts.items():
+        typer.echo(f"{part}:")
+        _show(frame, form, wrap=wrap)
+        typer.echo()
 
 
 def _version(wanted: bool) -> None:
@@ -136,15 +170,15 @@ def setup() -> None:
 def setting(
     name: Annotated[str, typer.Argument(metavar="[NAME]", help="Name of a setting.")] = "",
     value: Annotated[
-        str, typer.Argument(metavar="[VALUE]", help="New value, with a unit if not its own.")
-    ] = "",
+        str | None, typer.Argument(metavar="[VALUE]", help="New value, with a unit if not its own.")
+    ] = None,
     form: TableOrJson = "table",
 ) -> None:
     """Show the laboratory's settings, or change one."""
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
-        frame = lab.setting(name, value or None)
-    show.print_json(show.json_records(frame, ())) if form == "json" else show.print_table(frame)
+        frame = lab.setting(name, value)
+    _show(frame, form, wrap="meaning")
 
 
 @app.command()
@@ -270,7 +304,7 @@ def well_list(form: TableOrJson = "table") -> None:
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         frame = lab.well_list()
-    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame)
+    _show(frame, form)
 
 
 @plug_app.command("list")
@@ -279,22 +313,22 @@ def plug_list(well: Well, form: TableOrJson = "table") -> None:
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         frame = lab.plug_list(well)
-    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame, _DECIMALS)
+    _show(frame, form)
 
 
 @plug_app.command("show")
 def plug_show(well: Well, plug: Plug, form: TableOrJson = "table") -> None:
     """Show all that is recorded of a plug, with the numbers of its readings, and its results."""
+    from corelab.quantities import RESULTS
+
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         found = lab.plug_show(well, plug)
-    if form == "json":
-        show.print_json({name: show.json_records(frame) for name, frame in found.items()})
-        return
-    for name, frame in found.items():
-        typer.echo(f"{name}:")
-        show.print_table(frame, wrap="entry")
-        typer.echo()
+    results = found["results"]
+    results.insert(1, "unit", [RESULTS[q].unit if q in RESULTS else "" for q in results["quantity"]])
+    if form == "table":
+        found["entries"] = found["entries"].drop(columns=["measured on", "measured by"])
+    _show_parts(found, form, wrap="entry")
 
 
 @person_app.command("add")
@@ -307,7 +341,7 @@ def person_add(
     """Register a person, or give one another role; the first must be a manager."""
     with _lab() as lab:
         lab.person_add(name, role)
-    show.tell(f"Registered {name} as {role}.")
+    show.tell(f"Registered {' '.join(name.split())} as {role}.")
 
 
 @app.command()
@@ -316,13 +350,7 @@ def recovery(well: Well, unit: DepthUnit = "", form: TableOrJson = "table") -> N
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         found = lab.recovery(well, unit)
-    if form == "json":
-        show.print_json({name: show.json_records(frame) for name, frame in found.items()})
-        return
-    for name, frame in found.items():
-        typer.echo(f"{name}:")
-        show.print_table(frame, _DECIMALS | _LENGTHS)
-        typer.echo()
+    _show_parts(found, form, wrap="notes")
 
 
 @app.command()
@@ -334,7 +362,7 @@ def board(
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         frame = lab.board(well)
-    show.print_json(show.json_records(frame)) if form == "json" else show.print_table(frame)
+    _show(frame, form, wrap="not measured")
 
 
 @app.command()
@@ -347,11 +375,13 @@ def interval(
     where: Where = "",
     stress: Stress = None,
     with_uncertainty: Uncertain = False,
-    form: Format = "table",
+    form: Format = "",
     out: Out = None,
 ) -> None:
     """The plugs of an interval and their results."""
-    _one_of("--format", form, "table", "csv", "json", "parquet")
+    forms = ("table", "csv", "json", "parquet")
+    suffix = out.suffix.lower().removeprefix(".") if out else ""
+    form = _one_of("--format", form or (suffix if suffix in forms else "table"), *forms)
     if form == "parquet" and out is None:
         raise Usage("Parquet is for files: name one with --out FILE.")
     with _lab() as lab:
@@ -365,50 +395,39 @@ def interval(
             stress=stress,
             with_uncertainty=with_uncertainty,
         )
-    if out is not None and form in {"csv", "parquet"}:
-        from corelab.formats import tables_out
+    from corelab.formats import tables_out
 
-        tables_out.write_csv(out, frame) if form == "csv" else tables_out.write_parquet(out, frame)
-        show.tell(f"Wrote {len(frame)} plugs to {out}.")
-        return
-    with _output(out):
+    if out is not None and form == "parquet":
+        tables_out.write_parquet(out, frame)
+    elif out is not None and form == "csv":
+        tables_out.write_csv(out, frame)
+    else:
         if form == "json":
-            show.print_json(show.json_records(frame))
+            text = show.as_json(show.json_records(frame))
         elif form == "csv":
-            typer.echo(frame.to_csv(index=False), nl=False)
+            text = frame.to_csv(index=False, lineterminator="\n").rstrip("\n")
         else:
-            hidden = {
-                "well",
-                "laboratory",
-                "status",
-                "bulk volume [cm3]",
-                "dry mass [g]",
-                "bulk density [g/cm3]",
-            }
-            shown = [c for c in frame.columns if c not in hidden]
-            show.print_table(frame[shown], _DECIMALS, wrap="flags")
-            typer.echo(f"{len(frame)} plugs")
+            text = _interval_table(frame, None if out else show.room())
+        if out is None:
+            typer.echo(text)
+            return
+        tables_out.write_text(out, f"{text}\n")
+    show.tell(f"Wrote {len(frame)} plug{'' if len(frame) == 1 else 's'} to {out}.")
 
 
-class _output:
-    """Standard output, or a file in its place."""
-
-    def __init__(self, out: Path | None) -> None:
-        self.out = out
-
-    def __enter__(self) -> None:
-        if self.out is not None:
-            try:
-                self.file = self.out.open("w", encoding="utf-8", newline="")
-            except OSError as trouble:
-                raise CorelabError(f"{self.out} cannot be written: {trouble.strerror}.") from trouble
-            self.before, sys.stdout = sys.stdout, self.file
-
-    def __exit__(self, *_: object) -> None:
-        if self.out is not None:
-            sys.stdout = self.before
-            self.file.close()
-            show.tell(f"Wrote {self.out}.")
+def _interval_table(frame: pd.DataFrame, room: int | None) -> str:
+    """As many columns as there is room for, the most wanted first; flags as numbers of notes below."""
+    marks, notes = show.numbered(frame["flags"].tolist())
+    rank = {name: place for place, name in enumerate(_WANTED_FIRST)}
+    order = sorted(frame.columns, key=lambda c: rank.get(c.removeprefix("u ").split(" [")[0], len(rank)))
+    lines, left_out = show.table(frame.assign(flags=marks), _DECIMALS, important=order, room=room)
+    if notes:
+        lines += ["", "flags:", *notes]
+    lines += ["", f"{len(frame)} plug{'' if len(frame) == 1 else 's'}"]
+    if left_out:
+        lines.append(f"No room for: {', '.join(left_out)}.")
+        lines.append("All columns: --format csv, json or parquet; or pass the table on to a pager or a file.")
+    return "\n".join(lines)
 
 
 @app.command()
@@ -425,15 +444,12 @@ def history(
         show.print_json(show.json_records(frame))
         return
     for row in frame.to_dict("records"):
-        what = row.get("what") or row["detail"]
-        why = (
-            f" Why: {row['reason']}"
-            if row.get("reason")
-            else (f" Why: {row['why']}" if row.get("why") else "")
-        )
+        what = row["what"] if "what" in row else show.event_words(row["detail"])
+        reason = row.get("why") or row.get("reason")
         event = row.get("event", row.get("number"))
         when = str(row["at"])[:19].replace("T", " ")
-        typer.echo(f"{event:>5}  {when} UTC  {row['person']}  {row['command']}: {what}.{why}")
+        line = f"{event:>5}  {when} UTC  {row['person']}  {row['command']}: {what}."
+        typer.echo(f"{line} Why: {reason}" if reason else line)
 
 
 @app.command()
@@ -507,7 +523,7 @@ def run() -> None:
         if hasattr(stream, "reconfigure"):
             stream.reconfigure(encoding="utf-8", errors="replace")
     try:
-        app()
+        app(prog_name="corelab")
     except Refused as refused:
         show.print_lines([refused.summary, *(f"  {problem}" for problem in refused.problems)], 200)
         sys.exit(1)
@@ -521,6 +537,9 @@ def run() -> None:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         sys.exit(1)
     except Exception as fault:
+        if isinstance(fault, OSError) and fault.errno == errno.ENOSPC:
+            show.tell(f"The output cannot be written: {fault.strerror}. Make room and try again.")
+            sys.exit(1)
         log = _log_fault()
         show.tell(
             f"This should not have happened ({type(fault).__name__}). Nothing was written to the record. "

@@ -1,4 +1,4 @@
-"""A frame into a file that other programs read: CSV, Parquet."""
+"""A frame into a file that other programs read: CSV, Parquet; and plain text."""
 
 from __future__ import annotations
 
@@ -26,8 +26,15 @@ def write_parquet(path: Path, frame: pd.DataFrame) -> None:
     _replace(path, lambda part: frame.to_parquet(part, index=False))
 
 
+def write_text(path: Path, text: str) -> None:
+    """UTF-8, as it would stand on the terminal."""
+    _replace(path, lambda part: part.write_text(text, encoding="utf-8"))
+
+
 def _replace(path: Path, write: Callable[[Path], object]) -> None:
     """Write beside the target and put it in place whole, so that a failure leaves the old file."""
+    if not path.absolute().parent.is_dir():
+        raise Unavailable(f"There is no folder {path.absolute().parent}: make it first.")
     part = path.with_name(f".{path.name}.part")
     try:
         write(part)

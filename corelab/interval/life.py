@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Mapping
 from typing import Any
 
 import pandas as pd
@@ -44,19 +45,21 @@ def of_well(connection: sa.Connection, identities: store.Identities, well: int) 
     """The life of a well: what each event brought to it and its plugs."""
     counts = store.entries_by_event(connection, well, plugs_of_well(identities, well))
     lines = []
-    for event, group in counts.groupby("event", sort=True):
+    for _, group in counts.groupby("event", sort=True):
         first = group.iloc[0]
-        parts = [
-            f"{row['count']} withdrawn" if row["kind"] == WITHDRAWAL else f"{row['count']} of {row['kind']}"
-            for _, row in group.iterrows()
-        ]
-        corrected = int(group["corrections"].sum())
-        what = "entered " + ", ".join(parts) + (f" ({corrected} of them corrections)" if corrected else "")
-        lines.append(_line({**first.to_dict(), "event": event}, what))
+        withdrawn = group["kind"] == WITHDRAWAL
+        parts = [f"{row['count']} of {row['kind']}" for _, row in group[~withdrawn].iterrows()]
+        corrected = int(group.loc[~withdrawn, "corrections"].sum())
+        what = f"entered {', '.join(parts)}" if parts else ""
+        what += f" ({corrected} of them corrections)" if corrected else ""
+        if withdrawn.any():
+            gone = int(group.loc[withdrawn, "count"].sum())
+            what += f"{'; ' if what else ''}withdrew {gone} reading{'' if gone == 1 else 's'}"
+        lines.append(_line(first.to_dict(), what))
     return pd.DataFrame(lines, columns=list(COLUMNS))
 
 
-def _line(entry: dict[str, Any], what: str) -> dict[str, Any]:
+def _line(entry: Mapping[Any, Any], what: str) -> dict[str, Any]:
     return {
         "event": int(entry["event"]),
         "at": entry["at"],
@@ -73,7 +76,7 @@ def entered_words(text: str) -> str:
     )
 
 
-def _place(entry: dict[str, Any]) -> str:
+def _place(entry: Mapping[Any, Any]) -> str:
     if not entry["file"]:
         return ""
     sheet = f", sheet '{entry['sheet']}'" if entry["sheet"] else ""

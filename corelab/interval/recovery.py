@@ -67,14 +67,14 @@ def shots(connection: sa.Connection, identities: store.Identities, well: int) ->
     ids = [n for n, owner in identities.owners["gun_run"].items() if owner == well]
     rows = store.in_force(connection, "sidewall shots", ids, by="gun_run_id")
     made: list[dict[str, object]] = []
-    for (run, tool), group in rows.groupby(["gun_run_id", "tool"], sort=True):
+    for (_, tool), group in rows.groupby(["gun_run_id", "tool"], sort=True):
         count = group["outcome"].value_counts()
         outcomes = {outcome: int(count.get(outcome, 0)) for outcome in OUTCOMES}
         attempted = len(group) - outcomes["not attempted"]
         came = outcomes["recovered"] + outcomes["partial"]
         made.append(
             {
-                "gun run": identities.name("gun run", int(run)),
+                "gun run": identities.name("gun run", int(group["gun_run_id"].iloc[0])),
                 "tool": tool,
                 "shots": len(group),
                 **outcomes,

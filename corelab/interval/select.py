@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
@@ -59,6 +60,7 @@ COLUMNS = (
     "status",
     "flags",
 )
+REGISTERED = COLUMNS[: COLUMNS.index("lithology") + 1]
 DEPTH_COLUMNS = ("depth [m]", "log depth [m]")
 COMPUTED = tuple(c for c in COLUMNS if conditions.bare(c) in RESULTS)
 TEXT_COLUMNS = frozenset(c for c in COLUMNS if "[" not in c)
@@ -72,15 +74,11 @@ _VOLUMES = (
     "bulk density",
 )
 _SATURATIONS = ("oil saturation", "water saturation", "gas saturation")
-_REASONED = (
-    "bulk volume",
-    "grain volume",
-    "dry mass",
-    "porosity",
-    "grain density",
-    "klinkenberg permeability",
-)
+#: What changes with the net confining stress; masses, grains and the ambient saturations do not.
+_UNDER_STRESS = frozenset({"bulk volume", "pore volume", "porosity", "bulk density"})
 _SAME_STRESS_MPA = 0.005
+#: A depth typed in feet comes back as typed, without the last bits of two conversions.
+_DEPTH_DECIMALS = 9
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,7 +97,7 @@ class Filters:
 def natural_key(name: str) -> tuple[Any, ...]:
     """Sort key under which 2H stands before 10H."""
     parts = re.split(r"(\d+)", name.casefold())
-    return tuple((0, int(p), "") if p.isdigit() else (1, 0, p) for p in parts if p)
+    return tuple((0, int(p), "") if p.isdecimal() else (1, 0, p) for p in parts if p)
 
 
 def well_id(identities: store.Identities, name: str) -> int:
@@ -151,6 +149,14 @@ def interval(
     """
     if filters.depth and filters.depth not in {"driller", "log"}:
         raise Usage(f"--depth is driller or log, not {quoted(filters.depth)}.")
+    for option, given in (("top", filters.top), ("base", filters.base), ("stress", filters.stress_mpa)):
+        if given is not None and not math.isfinite(given):
+            raise Usage(f"--{option} is a number; found {given}.")
+    if filters.stress_mpa is not None and filters.stress_mpa < 0:
+        raise Usage(f"--stress is a net confining stress, not below zero; found {filters.stress_mpa:g} MPa.")
+    if filters.top is not None and filters.base is not None and filters.top > filters.base:
+        raise Usage(f"The top, {filters.top:g}, lies below the base, {filters.base:g}: exchange them.")
+    condition = conditions.parse(filters.where, COLUMNS) if filters.where.strip() else None
     number = well_id(identities, well)
     stored = store.settings(connection)
     well_facts = store.in_force(connection, "wells", [number], by="well_id")
@@ -158,9 +164,11 @@ def interval(
     frame = _facts(connection, identities, number, well_facts, stored)
     _place(frame, filters.depth)
     _add_results(frame, connection, stored, filters.stress_mpa)
-    metre, target = units.unit("m", "length"), units.unit(unit, "length")
-    for column in DEPTH_COLUMNS:
-        frame[column] = units.convert(frame[column].to_numpy(dtype=np.float64), metre, target)
+    if unit != "m":
+        metre, target = units.unit("m", "length"), units.unit(unit, "length")
+        for column in DEPTH_COLUMNS:
+            converted = units.convert(frame[column].to_numpy(dtype=np.float64), metre, target)
+            frame[column] = np.round(converted, _DEPTH_DECIMALS)
     keep = np.ones(len(frame), dtype=np.bool_)
     depth = frame["depth [m]"].to_numpy(dtype=np.float64)
     slack = 1e-9 * np.maximum(1.0, np.abs(depth))
@@ -168,12 +176,11 @@ def interval(
         keep &= depth >= filters.top - slack
     if filters.base is not None:
         keep &= depth <= filters.base + slack
-    if filters.where:
-        keep &= conditions.apply(conditions.parse(filters.where, COLUMNS), frame)
-    order = sorted(
-        np.flatnonzero(keep),
-        key=lambda i: (np.nan_to_num(depth[i], nan=np.inf), natural_key(frame["plug"].iat[i])),
-    )
+    if condition is not None:
+        keep &= conditions.apply(condition, frame)
+    names = frame["plug"].tolist()
+    kept: list[int] = np.flatnonzero(keep).tolist()
+    order = sorted(kept, key=lambda i: (np.nan_to_num(depth[i], nan=np.inf), natural_key(names[i])))
     headings = list(COLUMNS)
     if filters.with_uncertainty:
         headings = [h for c in COLUMNS for h in ((c, f"u {c}") if c in COMPUTED else (c,))]
@@ -239,7 +246,7 @@ def _facts(
                 "lithology": lithology.get(int(plug["plug_id"]), ""),
             }
         )
-    columns = ["plug_id", *(c for c in COLUMNS[:11])]
+    columns = ["plug_id", *REGISTERED]
     return pd.DataFrame(rows, columns=columns).astype({"depth [m]": "float64", "log depth [m]": "float64"})
 
 
@@ -265,7 +272,7 @@ def _add_results(
     results = store.results(connection, set(ids.tolist()))
     place = pd.Series(np.arange(len(ids)), index=ids)
     results = results.assign(place=place.reindex(results["plug_id"]).to_numpy())
-    for column in COLUMNS[11:]:
+    for column in COLUMNS[len(REGISTERED) :]:
         frame[column] = "" if column in TEXT_COLUMNS else np.nan
     for column in COMPUTED:
         frame[f"u {column}"] = np.nan
@@ -275,9 +282,7 @@ def _add_results(
     reasons: list[dict[str, list[str]]] = [{} for _ in range(len(frame))]
     for quantity in (*_VOLUMES, *_SATURATIONS):
         candidates = results[results["quantity"] == quantity]
-        chosen = _lowest_stress(
-            candidates, None if quantity in {"grain volume", "dry mass", "grain density"} else stress_mpa
-        )
+        chosen = _one_stress(candidates, stress_mpa if quantity in _UNDER_STRESS else None)
         _put(frame, chosen, quantity, doubts, reasons)
         if quantity == "porosity":
             there = chosen[chosen["value"].notna()]
@@ -294,12 +299,34 @@ def _set(frame: pd.DataFrame, column: str, at: NDArray[np.intp], values: Any) ->
     frame[column] = array
 
 
-def _lowest_stress(candidates: pd.DataFrame, stress_mpa: float | None) -> pd.DataFrame:
-    """One row a plug: at the stress asked for, else the lowest at which there is a value."""
+def _one_stress(candidates: pd.DataFrame, stress_mpa: float | None, *then: str) -> pd.DataFrame:
+    """One row a plug: at the stress asked for, else the lowest at which there is a value.
+
+    A plug without a value at the stress asked for keeps a row without one, which says why. `then` are
+    columns that order rows of one stress.
+    """
     rows = candidates.assign(missing=candidates["value"].isna())
     if stress_mpa is not None:
-        rows = rows[(rows["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)]
-    return rows.sort_values(["place", "missing", "stress_mpa"], kind="stable").drop_duplicates("place")
+        there = _stressed(rows, stress_mpa) & ~rows["missing"]
+        reason = rows["reason"].where(rows["missing"], f"not measured at {stress_mpa:g} MPa")
+        rows = rows.assign(
+            missing=~there,
+            stress_mpa=rows["stress_mpa"].where(there),
+            away=(rows["stress_mpa"] - stress_mpa).abs().where(there),
+            value=rows["value"].where(there),
+            uncertainty=rows["uncertainty"].where(there),
+            flags=rows["flags"].where(there, ""),
+            reason=reason.where(~there, ""),
+        )
+    else:
+        rows = rows.assign(away=rows["stress_mpa"])
+    return rows.sort_values(["place", "missing", "away", *then], kind="stable").drop_duplicates("place")
+
+
+def _stressed(rows: pd.DataFrame, stress_mpa: float) -> pd.Series[bool]:
+    """Which results were measured at a stress; one whose stress is not stated was measured at none."""
+    near = (rows["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)
+    return near & ~rows["flags"].str.contains(STRESS_NOT_STATED, regex=False).astype(bool)
 
 
 def _put(
@@ -316,7 +343,7 @@ def _put(
     for place, flags, reason in zip(at, chosen["flags"], chosen["reason"], strict=True):
         for flag in flags.split("; ") if flags else ():
             doubts[place][flag] = None
-        if reason and (quantity in _REASONED or quantity in _SATURATIONS):
+        if reason:
             reasons[place].setdefault(reason, []).append(quantity)
 
 
@@ -352,15 +379,11 @@ def _add_permeability(
     slips = slips.set_index(key)[["value", "uncertainty", "basis"]].add_prefix("slip_")
     k = k.join(slips, on=key)
     k = k.assign(
-        missing=k["value"].isna(),
         by_direction=k["direction"].map(rank_direction).fillna(9),
         by_basis=k["slip_basis"].map(rank_basis).fillna(1),
         by_gas=k["step"].map(rank_gas).fillna(9),
     )
-    if stress_mpa is not None:
-        k = k[(k["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)]
-    k = k.sort_values(["place", "missing", "stress_mpa", "by_direction", "by_basis", "by_gas"], kind="stable")
-    k = k.drop_duplicates("place")
+    k = _one_stress(k, stress_mpa, "by_direction", "by_basis", "by_gas")
     _put(frame, k, "klinkenberg permeability", doubts, reasons)
     there = k[k["value"].notna()]
     at = there["place"].to_numpy(dtype=np.intp)
@@ -377,6 +400,17 @@ def _add_permeability(
     stated = ~there["flags"].str.contains(STRESS_NOT_STATED, regex=False).to_numpy(dtype=np.bool_)
     _set(frame, "permeability stress [MPa]", at, np.where(stated, there["stress_mpa"], np.nan))
     _add_step(frame, results, k, lab_settings.number(stored, "reporting mean pressure"), stress_mpa, doubts)
+    known = frame["klinkenberg permeability [mD]"].notna()
+    gas = frame["gas permeability [mD]"].notna()
+    for column, wanted in (
+        ("gas permeability [mD]", known),
+        ("mean pressure [kPa]", gas),
+        ("slip factor [kPa]", known),
+    ):
+        for place in np.flatnonzero(wanted & frame[column].isna()):
+            by_instrument = frame["permeability basis"].iat[int(place)] == "reported"
+            reason = "not reported by the instrument" if by_instrument else "not measured"
+            reasons[place].setdefault(reason, []).append(conditions.bare(column))
 
 
 def _add_step(
@@ -401,7 +435,7 @@ def _add_step(
         steps["line_step"].isna() | (steps["basis"] == steps["line_step"]) | ~steps["line_step"].isin(GASES)
     )
     if stress_mpa is not None:
-        own_line &= (steps["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)
+        own_line &= _stressed(steps, stress_mpa)
     steps = steps[own_line & same_gas]
     steps = steps.assign(away=(steps["pressure"] - reporting_kpa).abs().fillna(np.inf))
     steps = steps.sort_values(["place", "stress_mpa", "away", "step"], kind="stable").drop_duplicates("place")

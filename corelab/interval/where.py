@@ -7,14 +7,16 @@
     operator := = | != | <> | < | <= | > | >=
 
 Columns are named without their units; a name of several words needs no quotes. Texts stand in single or
-double quotes. An empty value satisfies nothing but `is empty`. The text is parsed into a tree and applied to
-columns; nothing in it is ever evaluated as code.
+double quotes; the quote itself is doubled in them, or follows a backslash. An empty value satisfies nothing
+but `is empty`. The text is parsed into a tree and applied to columns; nothing in it is ever evaluated as
+code.
 """
 
 from __future__ import annotations
 
 import operator
 import re
+import unicodedata
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -27,15 +29,16 @@ from corelab.errors import Usage, did_you_mean, quoted
 
 Mask = NDArray[np.bool_]
 
+_NUMBER = r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?"
 _TOKEN = re.compile(
-    r"""\s*(?:
-        (?P<text>'(?:[^'\\]|\\.|'')*'|"(?:[^"\\]|\\.)*")
-      | (?P<number>[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?(?![\w.]))
+    rf"""\s*(?:
+        (?P<text>'(?:[^'\\]|\\.|'')*'|"(?:[^"\\]|\\.|"")*")
+      | (?P<number>{_NUMBER}(?=[\s()<>=!]|$))
       | (?P<operator><=|>=|<>|!=|==|=|<|>)
       | (?P<bracket>[()])
-      | (?P<word>[^\s()<>=!'"]+)
+      | (?P<word>[^\s()<>=!'"‘’“”]+)
     )""",
-    re.VERBOSE,
+    re.VERBOSE | re.DOTALL,
 )
 _COMPARE: dict[str, Callable[[Any, Any], Any]] = {
     "=": operator.eq,
@@ -63,7 +66,7 @@ class _Token:
 class Comparison:
     column: str
     operation: str
-    value: float | str | None = None
+    value: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -98,7 +101,7 @@ def parse(text: str, columns: Sequence[str]) -> Node:
     parser = _Parser(text, _tokens(text), {bare(c).casefold(): c for c in columns})
     node = parser.expression()
     if parser.peek() is not None:
-        parser.fail("'and' or 'or'")
+        parser.fail("'and' or 'or'; a text of several words stands in quotes")
     return node
 
 
@@ -108,7 +111,8 @@ def _tokens(text: str) -> list[_Token]:
         match = _TOKEN.match(text, at)
         if match is None or match.lastgroup is None:
             raise Usage(
-                f"Cannot read the condition from {quoted(text[at:].strip())} on: texts stand in quotes."
+                f"Cannot read the condition from {quoted(text[at:].strip())} on: texts stand in straight "
+                "quotes, such as 'sand', with one at each end."
             )
         tokens.append(_Token(match.lastgroup, match[match.lastgroup], match.start(match.lastgroup)))
         at = match.end()
@@ -175,7 +179,7 @@ class _Parser:
             return Not(node) if negative else node
         if self.word("contains"):
             value = self.value()
-            return Comparison(column, "contains", str(value))
+            return Comparison(column, "contains", value)
         token = self.peek()
         if token is None or token.sort != "operator":
             self.fail("a comparison (=, !=, <, <=, >, >=), 'contains' or 'is empty'")
@@ -189,7 +193,7 @@ class _Parser:
         while (token := self.peek()) is not None and token.sort in {"word", "text"}:
             if token.text.casefold() in _WORDS and words:
                 break
-            words.append(token.text.strip("'\"") if token.sort == "text" else token.text)
+            words.append(_unquoted(token))
             self.place += 1
         name = " ".join(words)
         name = re.sub(r"\s*\[[^\]]*\]$", "", name).casefold()
@@ -201,18 +205,20 @@ class _Parser:
             raise Usage(f"There is no column {quoted(' '.join(words))}; {did_you_mean(name, known, 40)}")
         return self.columns[name]
 
-    def value(self) -> float | str:
+    def value(self) -> str:
         token = self.peek()
         if token is None or token.sort not in {"number", "text", "word"} or token.text.casefold() in _WORDS:
             self.fail("a number, or a text in quotes")
         assert token is not None
         self.place += 1
-        if token.sort == "number":
-            return float(token.text)
-        if token.sort == "text":
-            body = token.text[1:-1]
-            return re.sub(r"\\(.)", r"\1", body.replace("''", "'"))
+        return _unquoted(token)
+
+
+def _unquoted(token: _Token) -> str:
+    if token.sort != "text":
         return token.text
+    quote, body = token.text[0], token.text[1:-1]
+    return re.sub(rf"\\(.)|{quote}{quote}", lambda match: match[1] or quote, body, flags=re.DOTALL)
 
 
 def apply(node: Node, frame: pd.DataFrame) -> Mask:
@@ -242,14 +248,12 @@ def _compared(node: Comparison, column: pd.Series[Any]) -> Mask:
     if pd.api.types.is_numeric_dtype(column):
         if node.operation == "contains":
             raise Usage(f"'{bare(node.column)}' holds numbers; 'contains' is for texts.")
-        try:
-            number = float(node.value if node.value is not None else "nan")
-        except ValueError:
+        if not re.fullmatch(_NUMBER, node.value.strip()):
             raise Usage(
-                f"'{bare(node.column)}' holds numbers; it cannot be compared with {quoted(node.value)}."
-            ) from None
-        with np.errstate(invalid="ignore"):
-            compared = _COMPARE[node.operation](column.to_numpy(dtype=np.float64), number)
+                f"'{bare(node.column)}' holds numbers; it cannot be compared with {quoted(node.value)}. "
+                "A number is written with a decimal point, such as 0.12."
+            )
+        compared = _COMPARE[node.operation](column.to_numpy(dtype=np.float64), float(node.value))
         return np.asarray(compared, dtype=np.bool_)
     wanted = _plain(node.value)
     texts = [_plain(v) for v in column]
@@ -262,9 +266,7 @@ def _compared(node: Comparison, column: pd.Series[Any]) -> Mask:
 
 
 def _plain(value: object) -> str:
-    if isinstance(value, float) and value.is_integer():
-        value = int(value)
-    return str(value).strip().casefold()
+    return unicodedata.normalize("NFC", str(value)).strip().casefold()
 
 
 def _empty(column: pd.Series[Any]) -> Mask:

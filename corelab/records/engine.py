@@ -31,6 +31,8 @@ def database_url(database: str) -> sa.URL:
         if url.drivername == "postgresql":
             url = url.set(drivername="postgresql+psycopg")
         return url
+    if not database.strip():
+        raise Unavailable(f"'{database}' cannot be used as a lab: name a file, such as corelab.db")
     return sa.URL.create("sqlite", database=str(Path(database)))
 
 

@@ -134,7 +134,9 @@ def described(formula: Any) -> dict[str, str]:
         "version": str(formula.version),
         "title": formula.title,
         "equation": formula.equation,
-        "symbols": "; ".join(f"{s.symbol} {s.meaning}" + (f" [{s.unit}]" if s.unit else "") for s in symbols),
+        "symbols": "; ".join(
+            f"{s.symbol or s.name} {s.meaning}" + (f" [{s.unit}]" if s.unit else "") for s in symbols
+        ),
         "valid": formula.valid,
         "source": formula.source,
         "tested": formula.tested,

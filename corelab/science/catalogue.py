@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from corelab.science.formula import Formula
 
-MODULES = ("fluids", "volumes", "gas_flow", "saturation")
+MODULES = ("fluids", "volumes", "gas_flow", "saturation", "stress", "texture")
 """Modules of `corelab.science` that declare `FORMULAS`; a new one is named here."""
 
 

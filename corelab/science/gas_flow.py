@@ -289,7 +289,8 @@ def liquid_permeability_md(
     return LIQUID_CONSTANT * flow / (factor * (upstream - downstream))
 
 
-def _groups(group: ArrayLike, *columns: Array) -> tuple[NDArray[np.intp], int, list[Array]]:
+def grouped(group: ArrayLike, *columns: Array) -> tuple[NDArray[np.intp], int, list[Array]]:
+    """Groups checked, how many there are, and the columns in the groups' shape."""
     labels = np.atleast_1d(np.asarray(group))
     refuse(labels.astype(np.float64) < 0, "group", labels, "whole numbers from 0")
     refuse(labels != np.trunc(labels.astype(np.float64)), "group", labels, "whole numbers from 0")
@@ -297,14 +298,15 @@ def _groups(group: ArrayLike, *columns: Array) -> tuple[NDArray[np.intp], int, l
     return labels, int(labels.max(initial=-1)) + 1, list(spread)
 
 
-def _sums(values: Array, labels: NDArray[np.intp], n: int) -> Array:
+def group_sums(values: Array, labels: NDArray[np.intp], n: int) -> Array:
+    """Sum of each group, complex or not."""
     sums: Array = np.bincount(labels, weights=values.real, minlength=n).astype(np.float64, copy=False)
     if values.dtype.kind == "c":  # bincount drops the imaginary part
         sums = sums + 1j * np.bincount(labels, weights=values.imag, minlength=n)
     return sums
 
 
-def _different(values: Array, labels: NDArray[np.intp], n: int) -> NDArray[np.intp]:
+def different_values(values: Array, labels: NDArray[np.intp], n: int) -> NDArray[np.intp]:
     """How many different values each group has."""
     order = np.lexsort((values.real, labels))
     sorted_labels, sorted_values = labels[order], values.real[order]
@@ -314,34 +316,50 @@ def _different(values: Array, labels: NDArray[np.intp], n: int) -> NDArray[np.in
 
 
 @dataclass(frozen=True, slots=True)
-class _Lines:
+class Lines:
+    """Straight lines, one a group; `unexplained` is the (weighted) sum of squares about them."""
+
     slope: Array
     intercept: Array
     slope_variance: Array
     intercept_variance: Array
     covariance: Array
     r_squared: Array
+    unexplained: Array
     points: NDArray[np.intp]
 
 
-def _lines(x: Array, y: Array, labels: NDArray[np.intp], n: int, different: NDArray[np.intp]) -> _Lines:
-    """Ordinary least squares of y on x in each group; NaN below three different x."""
+def group_lines(
+    x: Array,
+    y: Array,
+    labels: NDArray[np.intp],
+    n: int,
+    different: NDArray[np.intp],
+    weights: Array | None = None,
+) -> Lines:
+    """Least squares of y on x in each group; NaN below three different x.
+
+    With weights 1/u^2 the variances follow from them alone; without, from the scatter about the line.
+    """
     points = np.bincount(labels, minlength=n)
     with np.errstate(invalid="ignore", divide="ignore"):
-        x_mean, y_mean = _sums(x, labels, n) / points, _sums(y, labels, n) / points
+        w = 1.0 if weights is None else weights
+        total = points if weights is None else group_sums(weights, labels, n)
+        x_mean, y_mean = group_sums(w * x, labels, n) / total, group_sums(w * y, labels, n) / total
         dx, dy = x - x_mean[labels], y - y_mean[labels]
-        sxx = np.where(different >= 3, _sums(dx * dx, labels, n), np.nan)
-        slope = _sums(dx * dy, labels, n) / sxx
+        sxx = np.where(different >= 3, group_sums(w * dx * dx, labels, n), np.nan)
+        slope = group_sums(w * dx * dy, labels, n) / sxx
         intercept = y_mean - slope * x_mean
-        unexplained = _sums((dy - slope[labels] * dx) ** 2, labels, n)
-        slope_variance = unexplained / (points - 2) / sxx
-        return _Lines(
+        unexplained = group_sums(w * (dy - slope[labels] * dx) ** 2, labels, n)
+        slope_variance = (unexplained / (points - 2) if weights is None else 1.0) / sxx
+        return Lines(
             slope,
             intercept,
             slope_variance,
-            slope_variance * (sxx / points + x_mean**2),
+            slope_variance * (sxx / total + x_mean**2),
             -slope_variance * x_mean,
-            1.0 - unexplained / _sums(dy * dy, labels, n),
+            1.0 - unexplained / group_sums(w * dy * dy, labels, n),
+            unexplained,
             points,
         )
 
@@ -352,7 +370,8 @@ class Klinkenberg:
 
     `covariance_md_kpa` is of k_infinity and slip factor, `slope_md_kpa` the slope (which is not the slip
     factor). `refused` marks an intercept that is not above 0: no rock has it, and the value is shown so
-    that the fault can be found.
+    that the fault can be found. `chi_square` is the sum of squares about the line: with weights to be
+    compared with points - 2, without them in md2.
     """
 
     k_infinity_md: Array
@@ -365,10 +384,14 @@ class Klinkenberg:
     r_squared: Array
     points: NDArray[np.intp]
     refused: Mask
+    chi_square: Array
 
 
 def klinkenberg_regression(
-    gas_permeability_md: ArrayLike, mean_pressure_kpa: ArrayLike, group: ArrayLike
+    gas_permeability_md: ArrayLike,
+    mean_pressure_kpa: ArrayLike,
+    group: ArrayLike,
+    weights: ArrayLike | None = None,
 ) -> Klinkenberg:
     """Permeability at infinite pressure and slip factor, from steps at several mean pressures.
 
@@ -380,24 +403,28 @@ def klinkenberg_regression(
         Their mean absolute pressures [kPa], above 0.
     group : array_like of int (n,)
         Which line a step belongs to, 0 to m - 1 (one plug, direction, gas and stress).
+    weights : array_like (n,), optional
+        1/u^2 of each step, u the standard uncertainty of its permeability [md], above 0; without them all
+        steps count alike.
 
     Returns
     -------
     Klinkenberg
         Arrays (m,): k_infinity [md], slip factor [kPa], slope [md kPa], standard errors, covariance of
-        k_infinity and slip factor [md kPa], r squared, points, and `refused`. NaN for a group with fewer
-        than three different mean pressures or with a missing step.
+        k_infinity and slip factor [md kPa], r squared, points, `refused`, and chi square. NaN for a group
+        with fewer than three different mean pressures or with a missing step.
 
     Raises
     ------
     Impossible
-        If a permeability or a mean pressure is not above 0, or a group not a whole number from 0.
+        If a permeability, a mean pressure or a weight is not above 0, or a group not a whole number from 0.
 
     Notes
     -----
     k_g = k_inf (1 + b/p_m): least squares of k_g on 1/p_m gives intercept k_inf and slope m; b = m/k_inf.
     Standard error of b to first order: var b = (var m - 2 b cov(m, k) + b^2 var k)/k^2. Straight only
-    without inertia. At least three mean pressures: ASTM D4525.
+    without inertia. At least three mean pressures: ASTM D4525. With weights the standard errors follow from
+    them, not from the scatter; chi square tells whether the two agree.
 
     References
     ----------
@@ -412,8 +439,13 @@ def klinkenberg_regression(
     """
     permeability = positive("gas_permeability_md", gas_permeability_md)
     pressure = positive("mean_pressure_kpa", mean_pressure_kpa)
-    labels, n, (permeability, pressure) = _groups(group, permeability, pressure)
-    line = _lines(1.0 / pressure, permeability, labels, n, _different(pressure, labels, n))
+    if weights is None:
+        labels, n, (permeability, pressure) = grouped(group, permeability, pressure)
+        w = None
+    else:
+        given = positive("weights", weights)
+        labels, n, (permeability, pressure, w) = grouped(group, permeability, pressure, given)
+    line = group_lines(1.0 / pressure, permeability, labels, n, different_values(pressure, labels, n), w)
     with np.errstate(invalid="ignore", divide="ignore"):
         k, b = line.intercept, line.slope / line.intercept
         b_variance = (line.slope_variance - 2.0 * b * line.covariance + b**2 * line.intercept_variance) / k**2
@@ -428,6 +460,7 @@ def klinkenberg_regression(
             line.r_squared,
             line.points,
             k.real <= 0.0,
+            line.unexplained,
         )
 
 
@@ -1026,8 +1059,8 @@ def forchheimer_regression(
     # M/W is 1/molar rate
     y = area_m2 * driving_pa2 / (2.0 * GAS_CONSTANT_J_MOL_K * kelvins * viscosity_pas * length_m * molar_rate)
     x = mass_rate / (viscosity_pas * area_m2)
-    labels, n, (x, y) = _groups(group, x, y)
-    line = _lines(x, y, labels, n, _different(x, labels, n))
+    labels, n, (x, y) = grouped(group, x, y)
+    line = group_lines(x, y, labels, n, different_values(x, labels, n))
     with np.errstate(invalid="ignore", divide="ignore"):
         return Forchheimer(
             1.0 / line.intercept / MILLIDARCY_M2,
@@ -1038,6 +1071,240 @@ def forchheimer_regression(
             line.points,
             (line.intercept.real <= 0.0) | (line.slope.real < 0.0),
         )
+
+
+@dataclass(frozen=True, slots=True)
+class SlipInertia:
+    """Slip and inertia fitted together, one result a group.
+
+    `chi_square` and `chi_square_slip_only` are the sums of squares of permeability about the fit with
+    inertia and about the Klinkenberg line without, weighted or in md2. `demanded` marks the groups whose
+    steps show an inertia above 0 that the line without it cannot explain; elsewhere the line is to be used.
+    """
+
+    k_infinity_md: Array
+    slip_factor_kpa: Array
+    inertial_coefficient_1_m: Array
+    k_infinity_se_md: Array
+    slip_factor_se_kpa: Array
+    inertial_coefficient_se_1_m: Array
+    chi_square: Array
+    chi_square_slip_only: Array
+    points: NDArray[np.intp]
+    demanded: Mask
+
+
+def _joint_normal(
+    theta: Array, x: Array, z: Array, k: Array, w: Array, labels: NDArray[np.intp]
+) -> tuple[Array, Array, Array, Array]:
+    """Of sum w (K - k)^2/2 with K = s/(1 + beta z s), s = a + m x: value, gradient, Hessian, J'wJ."""
+    n = theta.shape[0]
+    a, m, beta = theta[labels].T
+    s = a + m * x
+    d = 1.0 + beta * z * s
+    fitted = s / d
+    by_s, by_beta = 1.0 / d**2, -z * fitted**2
+    slopes = np.stack([by_s, by_s * x, by_beta])
+    by_ss, by_sb, by_bb = -2.0 * beta * z / d**3, -2.0 * z * s / d**3, 2.0 * z**2 * fitted**3
+    bends = (
+        (by_ss, by_ss * x, by_sb),
+        (by_ss * x, by_ss * x * x, by_sb * x),
+        (by_sb, by_sb * x, by_bb),
+    )
+    r = fitted - k
+    value = group_sums(w * r * r, labels, n)
+    gradient = np.stack([group_sums(w * r * slopes[i], labels, n) for i in range(3)], axis=-1)
+    square = np.stack(
+        [
+            np.stack([group_sums(w * slopes[i] * slopes[j], labels, n) for j in range(3)], -1)
+            for i in range(3)
+        ],
+        axis=-2,
+    )
+    bent = np.stack(
+        [np.stack([group_sums(w * r * bends[i][j], labels, n) for j in range(3)], -1) for i in range(3)],
+        axis=-2,
+    )
+    return value, gradient, square + bent, square
+
+
+def _solved(matrix: Array, right: Array) -> Array:
+    """Solutions of small systems, scaled to a diagonal of ones; NaN where a system is not finite."""
+    diagonal = np.abs(np.diagonal(matrix, axis1=-2, axis2=-1).real)
+    finite = np.isfinite(matrix).all(axis=(-2, -1)) & np.isfinite(right).all(axis=-1)
+    usable: Mask = np.asarray(finite & (diagonal > 0.0).all(axis=-1))[:, np.newaxis]
+    scale = 1.0 / np.sqrt(np.where(usable, diagonal, 1.0))
+    scaled: Array = np.where(
+        usable[..., np.newaxis],
+        matrix * scale[:, :, np.newaxis] * scale[:, np.newaxis, :],
+        np.eye(matrix.shape[-1]),
+    )
+    sides: Array = (np.where(usable, right, 0.0) * scale)[..., np.newaxis]
+    found: Array = np.linalg.solve(scaled, sides)[..., 0] * scale
+    return np.where(usable, found, np.nan)
+
+
+def _joint_start(x: Array, z: Array, k: Array, w: Array, labels: NDArray[np.intp], n: int) -> Array:
+    """The best of a few inertias, each with its straight line of k/(1 - beta z k) on x (real numbers)."""
+    most = np.full(n, np.inf)
+    np.minimum.at(most, labels, 1.0 / (z * k))
+    best, least = np.full((n, 3), np.nan), np.full(n, np.inf)
+    for share in 1.0 - 0.75 ** np.arange(24):
+        beta = share * most
+        open_share = 1.0 - beta[labels] * z * k
+        # a step's k changes with its s as (1 - beta z k)^2
+        line = group_lines(x, k / open_share, labels, n, np.full(n, 3), w * open_share**4)
+        theta = np.stack([line.intercept, line.slope, beta], axis=-1)
+        value = _joint_normal(theta, x, z, k, w, labels)[0]
+        better = value < least
+        best[better], least = theta[better], np.where(better, value, least)
+    return best
+
+
+def slip_inertia_regression(
+    gas_permeability_md: ArrayLike,
+    mean_pressure_kpa: ArrayLike,
+    flow_rate_cm3_s: ArrayLike,
+    flow_pressure_kpa: ArrayLike,
+    viscosity_mpas: ArrayLike,
+    molar_mass_g_mol: ArrayLike,
+    temperature_degc: ArrayLike,
+    area_cm2: ArrayLike,
+    group: ArrayLike,
+    weights: ArrayLike | None = None,
+) -> SlipInertia:
+    """Klinkenberg permeability, slip factor and inertial coefficient together, from steps at several rates.
+
+    Parameters
+    ----------
+    gas_permeability_md : array_like (n,)
+        Gas permeabilities of the steps without regard to inertia [md], above 0 (`gas_permeability_md`).
+    mean_pressure_kpa : array_like (n,)
+        Their mean absolute pressures [kPa], above 0.
+    flow_rate_cm3_s, flow_pressure_kpa : array_like (n,)
+        Flow rates at the plug's temperature [cm3/s] and the absolute pressures they refer to [kPa].
+    viscosity_mpas, molar_mass_g_mol, temperature_degc : array_like (n,) or one value
+        Of the gas [mPa s, g/mol, degC].
+    area_cm2 : array_like (n,) or one value
+        Cross-section of the plug [cm2], above 0.
+    group : array_like of int (n,)
+        Which line a step belongs to, 0 to m - 1 (one plug, direction, gas and stress).
+    weights : array_like (n,), optional
+        1/u^2 of each step, u the standard uncertainty of its permeability [md], above 0; without them all
+        steps count alike.
+
+    Returns
+    -------
+    SlipInertia
+        Arrays (m,): k_infinity [md], slip factor [kPa], inertial coefficient [1/m], their standard errors,
+        chi square with and without inertia, points, and `demanded`. NaN for a group with fewer than four
+        different flows, fewer than three different mean pressures, a missing step, or no solution.
+
+    Raises
+    ------
+    Impossible
+        If a permeability, a pressure, a rate, a viscosity, a molar mass, an area or a weight is not above 0,
+        a temperature not above absolute zero, or a group not a whole number from 0.
+
+    Notes
+    -----
+    1/k_app = 1/(k (1 + b/p_m)) + beta W/(mu A), W mass rate q p M/(R T): least squares of k_app, by damped
+    Gauss-Newton steps and then full Newton steps; k permeability, b slip factor, p_m mean pressure, beta
+    inertial coefficient, mu viscosity, A area, M molar mass, R gas constant, T absolute temperature. The
+    last step is taken with the arguments as given, complex or not, and so carries the implicit derivative.
+    Demanded: beta above 0, and at 1 % the fall of the sum of squares is too great for chance: F with 1 and
+    n - 3 degrees of freedom without weights, chi square with 1 degree with them. Steps without inertia are
+    so marked in about 0.5 % of groups, since half of the chance findings lie below 0. With weights the
+    standard errors follow from them, not from the scatter.
+
+    References
+    ----------
+    Klinkenberg, L. J. 1941, API Drilling and Production Practice, 200-213 (from memory); Cornell, D. & Katz,
+    D. L. 1953, "Flow of gases through consolidated porous media", Ind. Eng. Chem. 45:2145-2152 (from
+    memory).
+
+    Examples
+    --------
+    >>> pressure = np.array([120.0, 180.0, 300.0, 500.0, 700.0])
+    >>> rate = np.array([2.0, 9.0, 30.0, 80.0, 160.0])
+    >>> resistance = 5e8 * rate * 101.325e-3 * 28.0e-3 / (8.314462618 * 295.15) / (17.7e-6 * 11.4e-4)
+    >>> k = 1.0 / (1.0 / (20.0 * (1.0 + 40.0 / pressure)) + resistance * 1e-15 / 1.01325)
+    >>> found = slip_inertia_regression(k, pressure, rate, 101.325, 0.0177, 28.0, 22.0, 11.4, [0] * 5)
+    >>> [round(float(v[0]), 3) for v in (found.k_infinity_md, found.slip_factor_kpa)]
+    [20.0, 40.0]
+    >>> print(f"{float(found.inertial_coefficient_1_m[0]):.4g}", found.demanded)
+    5e+08 [ True]
+    """
+    from scipy.stats import chi2, f
+
+    k_app = positive("gas_permeability_md", gas_permeability_md)
+    pressure = positive("mean_pressure_kpa", mean_pressure_kpa)
+    flow = positive("flow_rate_cm3_s", flow_rate_cm3_s) * positive("flow_pressure_kpa", flow_pressure_kpa)
+    molar_mass_kg = positive("molar_mass_g_mol", molar_mass_g_mol) * 1e-3
+    mass_rate = (
+        flow * 1e-3 * molar_mass_kg / (GAS_CONSTANT_J_MOL_K * kelvin("temperature_degc", temperature_degc))
+    )
+    viscosity_pas = positive("viscosity_mpas", viscosity_mpas) * 1e-3
+    z = MILLIDARCY_M2 * mass_rate / (viscosity_pas * positive("area_cm2", area_cm2) * 1e-4)
+    given = np.ones(()) if weights is None else positive("weights", weights)
+    labels, n, (k_app, x, z, w, flow) = grouped(group, k_app, 1.0 / pressure, z, given, flow)
+    slip_only = group_lines(x, k_app, labels, n, different_values(x, labels, n), w)
+    points = slip_only.points
+    enough = (different_values(flow, labels, n) >= 4) & (different_values(x, labels, n) >= 3)
+    missing = np.bincount(labels, weights=np.isnan(k_app * x * z * w * flow), minlength=n) > 0
+    usable = enough & ~missing
+    with np.errstate(all="ignore"):
+        kept = usable[labels]
+        x_real, z_real, k_real, w_real = (np.where(kept, c.real, 1.0) for c in (x, z, k_app, w))
+        theta = _joint_start(x_real, z_real, k_real, w_real, labels, n)
+        damping = np.full(n, 1e-3)
+        value, gradient, _, square = _joint_normal(theta, x_real, z_real, k_real, w_real, labels)
+        for _ in range(60):
+            lifted = square * (1.0 + damping[:, np.newaxis, np.newaxis] * np.eye(3))
+            tried = theta - _solved(lifted, gradient)
+            better = _joint_normal(tried, x_real, z_real, k_real, w_real, labels)[0] <= value
+            theta = np.where(better[:, np.newaxis], tried, theta)
+            damping = np.where(better, damping / 10.0, damping * 10.0)
+            value, gradient, _, square = _joint_normal(theta, x_real, z_real, k_real, w_real, labels)
+        for _ in range(4):
+            _, gradient, hessian, _ = _joint_normal(theta, x_real, z_real, k_real, w_real, labels)
+            theta = theta - _solved(hessian, gradient)
+        least = value
+        _, gradient, hessian, _ = _joint_normal(theta, x, z, k_app, w, labels)
+        theta = theta - _solved(hessian, gradient)
+        value, _, _, square = _joint_normal(theta, x, z, k_app, w, labels)
+        noise = value / (points - 3) if weights is None else np.ones(n)
+        unit = np.broadcast_to(np.eye(3), (n, 3, 3))
+        spread = np.stack([_solved(square, unit[:, i]) for i in range(3)], axis=-1)
+        spread = spread * noise[:, np.newaxis, np.newaxis]
+        k, b, beta = theta[:, 0], theta[:, 1] / theta[:, 0], theta[:, 2]
+        b_variance = (spread[:, 1, 1] - 2.0 * b * spread[:, 0, 1] + b**2 * spread[:, 0, 0]) / k**2
+        fall = slip_only.unexplained.real - value.real
+        if weights is None:
+            chance = f.sf(fall / noise.real, 1, points - 3)
+        else:
+            chance = chi2.sf(fall, 1)
+        # what rounding alone leaves about a perfect fit is neither evidence nor a failure
+        rounding = 1e-20 * group_sums(w.real * k_app.real**2, labels, n)
+        found = usable & (value.real <= 1.000001 * least + rounding) & (k.real > 0.0)
+        seen = slip_only.unexplained.real > rounding
+    demanded = found & seen & (beta.real > 0.0) & (chance < 0.01)
+
+    def there(numbers: Array) -> Array:
+        return np.where(found, numbers, np.nan)
+
+    return SlipInertia(
+        there(k),
+        there(b),
+        there(beta),
+        there(np.sqrt(spread[:, 0, 0])),
+        there(np.sqrt(b_variance)),
+        there(np.sqrt(spread[:, 2, 2])),
+        there(value),
+        np.where(missing, np.nan, slip_only.unexplained),
+        points,
+        demanded,
+    )
 
 
 def inertia_geertsma_1_m(permeability_md: ArrayLike, porosity_frac: ArrayLike) -> Array:
@@ -1246,6 +1513,7 @@ _K_INF_OUT = Symbol("k_inf", "k_infinity_md", "mD", "Klinkenberg permeability")
 _PERMEABILITY = (Symbol("k", "permeability_md", "mD", "permeability"),)
 _SLIP = Symbol("b", "slip_factor_kpa", "kPa", "slip factor")
 _GROUP = Symbol("", "group", "", "which line a step belongs to")
+_WEIGHTS = Symbol("w", "weights", "", "1/u^2 of the step's permeability in md")
 _POINTS = (
     Symbol("r2", "r_squared", "1", "share of the variance explained"),
     Symbol("n", "points", "1", "steps"),
@@ -1337,7 +1605,7 @@ FORMULAS: tuple[Formula, ...] = (
         1,
         "Klinkenberg permeability and slip factor",
         "k_g = k_inf (1 + b/p_m), least squares of k_g on 1/p_m",
-        (_K_GAS, _MEAN, _GROUP),
+        (_K_GAS, _MEAN, _GROUP, _WEIGHTS),
         (
             _K_INF_OUT,
             _SLIP,
@@ -1347,6 +1615,7 @@ FORMULAS: tuple[Formula, ...] = (
             Symbol("s_m", "slope_se_md_kpa", "mD.kPa", "standard error"),
             Symbol("cov", "covariance_md_kpa", "mD.kPa", "covariance of k_inf and b"),
             *_POINTS,
+            Symbol("chi2", "chi_square", "", "sum of squares about the line, weighted"),
         ),
         "at least three different mean pressures (ASTM D4525); no inertia",
         "Klinkenberg 1941, API Drilling and Production Practice, 200-213 (from memory)",
@@ -1534,6 +1803,31 @@ FORMULAS: tuple[Formula, ...] = (
         "eq. 7.115a, p. 454",
         "worked case made from a stated truth",
         forchheimer_regression,
+        elementwise=False,
+    ),
+    Formula(
+        "slip-inertia-regression",
+        1,
+        "Klinkenberg permeability, slip factor and inertial coefficient",
+        "1/k_app = 1/(k_inf (1 + b/p_m)) + beta W/(mu A), W = q p M/(R T)",
+        (_K_GAS, _MEAN, _RATE, _BASE, _VISCOSITY, _MOLAR_MASS, _TEMPERATURE, _AREA, _GROUP, _WEIGHTS),
+        (
+            _K_INF_OUT,
+            _SLIP,
+            Symbol("beta", "inertial_coefficient_1_m", "1/m", "inertial coefficient"),
+            Symbol("s_k", "k_infinity_se_md", "mD", "standard error"),
+            Symbol("s_b", "slip_factor_se_kpa", "kPa", "standard error"),
+            Symbol("s_beta", "inertial_coefficient_se_1_m", "1/m", "standard error"),
+            Symbol("chi2", "chi_square", "", "sum of squares about the fit"),
+            Symbol("chi2_0", "chi_square_slip_only", "", "sum of squares about the line without inertia"),
+            Symbol("n", "points", "1", "steps"),
+            Symbol("", "demanded", "", "the steps show inertia"),
+        ),
+        "at least four different rates; ideal gas; inertia demanded at 1 %",
+        "Klinkenberg 1941, API Drilling and Production Practice, 200-213; Cornell & Katz 1953, Ind. Eng. "
+        "Chem. 45:2145-2152 (from memory)",
+        "simulated steps with and without inertia; scipy's least squares; worked case without slip",
+        slip_inertia_regression,
         elementwise=False,
     ),
     Formula(

@@ -324,7 +324,7 @@ CORE_GAMMA = Sheet(
         _WELL,
         name("run", "Core run.", refers="run", key=True),
         number("depth", "Driller's depth.", required=True, key=True),
-        number("gamma", "Natural gamma activity."),
+        number("gamma", "Natural gamma activity.", required=True),
     ),
 )
 

@@ -473,7 +473,7 @@ def upgrade() -> None:
         sa.Column("well_id", sa.Integer(), nullable=False),
         sa.Column("run_id", sa.Integer(), nullable=True),
         sa.Column("depth_m", Real, nullable=False),
-        sa.Column("gamma_gapi", Real, nullable=True),
+        sa.Column("gamma_gapi", Real, nullable=False),
         sa.Column("measured_on", sa.Text(), nullable=True),
         sa.Column("measured_by", sa.Text(), nullable=True),
         sa.Column("repeat", sa.Integer(), nullable=False),

@@ -304,8 +304,10 @@ def batzle_wang_g_cm3(t: float, p_mpa: float, s: float) -> float:
         - 0.333 * p_mpa**2
         - 0.002 * t * p_mpa**2
     )
-    inner = 300.0 * p_mpa - 2400.0 * p_mpa * s + t * (
-        80.0 + 3.0 * t - 3300.0 * s - 13.0 * p_mpa + 47.0 * p_mpa * s
+    inner = (
+        300.0 * p_mpa
+        - 2400.0 * p_mpa * s
+        + t * (80.0 + 3.0 * t - 3300.0 * s - 13.0 * p_mpa + 47.0 * p_mpa * s)
     )
     return water + s * (0.668 + 0.44 * s + 1e-6 * inner)
 

@@ -33,9 +33,11 @@ from corelab.science.gas_flow import (
     mean_pressure_kpa,
     slip_between_gases_kpa,
     slip_corrected_md,
+    slip_inertia_regression,
     slip_rp40_air_kpa,
     slip_scaled_kpa,
 )
+from corelab.science.uncertainty import partials
 from corelab.units import MILLIDARCY_M2
 
 ATM = 101.325
@@ -225,6 +227,58 @@ def test_klinkenberg_oracle_statsmodels_for_every_group():
         assert found.covariance_md_kpa[g] == pytest.approx(turned[0, 1], rel=1e-7)
     assert found.points.tolist() == sizes
     assert not found.refused.any()
+
+
+def test_klinkenberg_weighted_oracle_statsmodels():
+    rng = np.random.default_rng(4)
+    group = np.repeat([0, 1], 6)
+    pressure = rng.uniform(110.0, 900.0, 12)
+    u = rng.uniform(0.002, 0.05, 12)
+    permeability = np.array([1.0, 5.0])[group] * (1.0 + 60.0 / pressure) + u * rng.normal(size=12)
+    found = klinkenberg_regression(permeability, pressure, group, 1.0 / u**2)
+    for g in range(2):
+        here = group == g
+        fit = sm.WLS(permeability[here], sm.add_constant(1.0 / pressure[here]), weights=u[here] ** -2.0).fit(
+            cov_type="fixed scale"
+        )
+        assert found.k_infinity_md[g] == pytest.approx(fit.params[0], rel=1e-9)
+        assert found.slope_md_kpa[g] == pytest.approx(fit.params[1], rel=1e-9)
+        assert found.k_infinity_se_md[g] == pytest.approx(fit.bse[0], rel=1e-8)
+        assert found.slope_se_md_kpa[g] == pytest.approx(fit.bse[1], rel=1e-8)
+        assert found.r_squared[g] == pytest.approx(fit.rsquared, rel=1e-8)
+        misfit = np.sum(
+            (
+                (permeability - found.k_infinity_md[g] * (1.0 + found.slip_factor_kpa[g] / pressure))[here]
+                / u[here]
+            )
+            ** 2
+        )
+        assert found.chi_square[g] == pytest.approx(misfit, rel=1e-8)
+
+
+def test_klinkenberg_weights_equal_or_missing():
+    k, pressure = [2.0, 1.52, 1.24, 1.13], [100.0, 200.0, 400.0, 800.0]
+    plain = klinkenberg_regression(k, pressure, [0] * 4)
+    alike = klinkenberg_regression(k, pressure, [0] * 4, 1e4)
+    assert alike.k_infinity_md[0] == pytest.approx(plain.k_infinity_md[0], rel=1e-12)
+    assert alike.chi_square[0] == pytest.approx(1e4 * plain.chi_square[0], rel=1e-9)
+    # the scatter would give chi square = n - 2
+    ratio = plain.k_infinity_se_md[0] / alike.k_infinity_se_md[0]
+    assert ratio**2 == pytest.approx(alike.chi_square[0] / 2.0, rel=1e-9)
+    # a step that is not trusted hardly counts
+    spoilt = klinkenberg_regression([*k, 9.0], [*pressure, 300.0], [0] * 5, [1e4] * 4 + [1e-8])
+    assert spoilt.k_infinity_md[0] == pytest.approx(plain.k_infinity_md[0], rel=1e-6)
+    gap = klinkenberg_regression(k, pressure, [0] * 4, [1.0, 1.0, np.nan, 1.0])
+    assert np.isnan(gap.k_infinity_md[0])
+    with pytest.raises(Impossible, match=r"^weights: found 0.0 at place 1"):
+        klinkenberg_regression(k, pressure, [0] * 4, [1.0, 0.0, 1.0, 1.0])
+    step = 1e-30j
+    tilted = klinkenberg_regression(k, pressure, [0] * 4, np.array([1e4, 2e4 + step, 1e4, 1e4]))
+    up, down = (
+        klinkenberg_regression(k, pressure, [0] * 4, [1e4, 2e4 + h, 1e4, 1e4]).slip_factor_kpa
+        for h in (1.0, -1.0)
+    )
+    np.testing.assert_allclose(tilted.slip_factor_kpa.imag / 1e-30, (up - down) / 2.0, rtol=1e-6)
 
 
 def test_klinkenberg_needs_three_different_mean_pressures():
@@ -426,6 +480,140 @@ def test_forchheimer_oracle_statsmodels_and_what_is_refused():
     )
     assert wrong.inertial_coefficient_1_m[0] < 0.0
     assert wrong.refused.tolist() == [True]
+
+
+MEAN = np.array([120.0, 180.0, 300.0, 500.0, 800.0, 1200.0])
+NITROGEN = (0.0177, 28.0134, 22.0, 11.4)  # mPa s, g/mol, degC, cm2
+
+
+def flow_steps(k, b, beta, noise, groups, seed=1):
+    """Steps of plugs with a stated truth, made by solving the quadratic of Forchheimer for the rate."""
+    mu, area, rt, length = 0.0177e-3, 11.4e-4, 8.314462618 * 295.15, 0.05
+    p1, p2 = 2.0 * MEAN - ATM, ATM
+    linear = 1.0 / (k * (1.0 + b / MEAN) * MILLIDARCY_M2)
+    driving = 28.0134e-3 * area * (p1**2 - p2**2) * 1e6 / (2.0 * rt * mu * length)
+    square = beta / (mu * area)
+    mass_rate = 2.0 * driving / (linear + np.sqrt(linear**2 + 4.0 * square * driving))
+    rate = mass_rate * rt / 28.0134e-3 / (ATM * 1e3) * 1e6
+    k_app = 1.0 / (linear + square * mass_rate) / MILLIDARCY_M2
+    error = np.random.default_rng(seed).normal(1.0, noise, (groups, MEAN.size)).ravel()
+    return (
+        np.tile(k_app, groups) * error,
+        np.tile(MEAN, groups),
+        np.tile(rate, groups),
+        ATM,
+        *NITROGEN,
+        np.repeat(np.arange(groups), MEAN.size),
+    )
+
+
+@pytest.mark.parametrize(
+    ("k", "b", "beta"),
+    [(20.0, 40.0, 5e8), (0.1, 200.0, 1e11), (500.0, 10.0, 5e7), (1000.0, 5.0, 1e8), (20.0, 40.0, 0.0)],
+)
+@pytest.mark.parametrize("weighted", [False, True])
+def test_slip_and_inertia_are_recovered_without_noise(k, b, beta, weighted):
+    steps = flow_steps(k, b, beta, 0.0, 1)
+    found = slip_inertia_regression(*steps, (0.001 * steps[0]) ** -2.0 if weighted else None)
+    assert found.k_infinity_md[0] == pytest.approx(k, rel=1e-8)
+    assert found.slip_factor_kpa[0] == pytest.approx(b, rel=1e-7)
+    assert found.inertial_coefficient_1_m[0] == pytest.approx(beta, rel=1e-7, abs=1.0)
+    if beta == 0.0:
+        assert not found.demanded[0]
+    elif not weighted:
+        assert found.demanded[0]
+
+
+def test_slip_and_inertia_with_noise_are_recovered_and_honest():
+    steps = flow_steps(200.0, 20.0, 2e8, 0.002, 1500)
+    for weights in (None, (0.002 * steps[0]) ** -2.0):
+        found = slip_inertia_regression(*steps, weights)
+        assert found.demanded.all()
+        for ours, error, truth in (
+            (found.k_infinity_md, found.k_infinity_se_md, 200.0),
+            (found.slip_factor_kpa, found.slip_factor_se_kpa, 20.0),
+            (found.inertial_coefficient_1_m, found.inertial_coefficient_se_1_m, 2e8),
+        ):
+            assert ours.mean() == pytest.approx(truth, rel=0.01)
+            if weights is not None:
+                # the standard errors are the scatter
+                assert error.mean() == pytest.approx(ours.std(), rel=0.08)
+    # chi square with n - 3 degrees of freedom
+    assert found.chi_square.mean() == pytest.approx(3.0, abs=4.0 * np.sqrt(6.0 / 1500))
+    assert (found.chi_square_slip_only > found.chi_square).all()
+
+
+def test_inertia_is_not_demanded_by_steps_without_it():
+    steps = flow_steps(20.0, 40.0, 0.0, 0.003, 4000)
+    for weights in (None, (0.003 * steps[0]) ** -2.0):
+        found = slip_inertia_regression(*steps, weights)
+        # stated: about 0.5 % of groups; four sampling errors above
+        assert found.demanded.mean() < 0.005 + 4.0 * np.sqrt(0.005 / 4000) + 0.002
+        assert 0.4 < (found.inertial_coefficient_1_m > 0.0).mean() < 0.6
+        assert (found.inertial_coefficient_1_m[found.demanded] > 0.0).all()
+
+
+def test_slip_inertia_oracle_scipy():
+    from scipy.optimize import least_squares
+
+    k_app, pressure, rate, *_ = flow_steps(20.0, 40.0, 5e8, 0.01, 1, seed=3)
+    found = slip_inertia_regression(k_app, pressure, rate, ATM, *NITROGEN, [0] * 6)
+    mass_rate = rate * 1e-6 * ATM * 1e3 * 28.0134e-3 / (8.314462618 * 295.15)
+    z = mass_rate / (0.0177e-3 * 11.4e-4) * MILLIDARCY_M2
+
+    def misfit(theta):
+        return 1.0 / (1.0 / (theta[0] * (1.0 + theta[1] / pressure)) + theta[2] * 1e8 * z) - k_app
+
+    fit = least_squares(misfit, [20.0, 40.0, 5.0], xtol=1e-15, ftol=1e-15, gtol=1e-15, x_scale="jac")
+    ours = [found.k_infinity_md[0], found.slip_factor_kpa[0], found.inertial_coefficient_1_m[0] / 1e8]
+    np.testing.assert_allclose(ours, fit.x, rtol=1e-5)
+    assert found.chi_square[0] == pytest.approx(2.0 * fit.cost, rel=1e-9)
+    errors = np.sqrt(np.diag(np.linalg.inv(fit.jac.T @ fit.jac)) * found.chi_square[0] / 3.0)
+    ours = [
+        found.k_infinity_se_md[0],
+        found.slip_factor_se_kpa[0],
+        found.inertial_coefficient_se_1_m[0] / 1e8,
+    ]
+    np.testing.assert_allclose(ours, errors, rtol=1e-4)
+
+
+def test_slip_inertia_finds_the_worked_case_without_slip():
+    # k 100.0 md, beta 3.00e7 1/ft, no slip (made, tolerance 0.2 %)
+    k_app = gas_permeability_md(RATES, ATM, UPSTREAM * ATM, ATM, 0.017665854, 5.08, 11.400918)
+    found = slip_inertia_regression(
+        k_app, (UPSTREAM + 1.0) / 2.0 * ATM, RATES, ATM, 0.017665854, 28.0134, 22.0, 11.400918, [0] * 4
+    )
+    assert found.k_infinity_md[0] == pytest.approx(100.0, rel=0.002)
+    assert found.inertial_coefficient_1_m[0] * FOOT == pytest.approx(3.00e7, rel=0.002)
+    assert found.slip_factor_kpa[0] == pytest.approx(0.0, abs=0.01)
+    assert found.demanded.tolist() == [True]
+
+
+def test_slip_inertia_needs_four_rates_and_carries_the_implicit_derivative():
+    k_app, pressure, rate, *_ = flow_steps(20.0, 40.0, 5e8, 0.005, 1)
+    few = slip_inertia_regression(k_app[:3], pressure[:3], rate[:3], ATM, *NITROGEN, [0] * 3)
+    assert np.isnan(few.inertial_coefficient_1_m).tolist() == [True]
+    assert few.demanded.tolist() == [False]
+    two = slip_inertia_regression(
+        np.tile(k_app, 2),
+        np.tile(pressure, 2),
+        np.r_[rate, rate[:1], np.nan, rate[2:]],
+        ATM,
+        *NITROGEN,
+        np.repeat([2, 0], 6),
+    )
+    assert np.isnan(two.k_infinity_md).tolist() == [True, True, False]
+    assert slip_inertia_regression([], [], [], ATM, *NITROGEN, []).k_infinity_md.shape == (0,)
+
+    def fitted(k0):
+        steps = np.array([k0, *k_app[1:]])
+        return slip_inertia_regression(
+            steps, pressure, rate, ATM, *NITROGEN, [0] * 6
+        ).inertial_coefficient_1_m
+
+    h = 1e-5 * k_app[0]
+    central = (fitted(k_app[0] + h) - fitted(k_app[0] - h)) / (2.0 * h)
+    np.testing.assert_allclose(partials(fitted, {"k0": k_app[0]})["k0"], central, rtol=1e-5)
 
 
 def test_inertia_correlations_published():

@@ -98,9 +98,7 @@ def test_saturation_published_tutorial_inputs():
     assert found.gas_saturation_frac == pytest.approx(0.0, abs=1e-15)
 
 
-@given(
-    st.floats(0.0, 5.0), st.floats(0.0, 5.0), st.floats(0.0, 250.0), st.floats(20.0, 200.0), st.booleans()
-)
+@given(st.floats(0.0, 5.0), st.floats(0.0, 5.0), st.floats(0.0, 250.0), st.floats(20.0, 200.0), st.booleans())
 @settings(max_examples=60, deadline=None)
 def test_law_masses_come_back_from_a_made_plug(brine_mass, oil, salinity, grains, left):
     salt = brine_mass * salinity / 1000.0
