@@ -92,7 +92,7 @@ def summary(lab: Lab, well: str) -> list[str]:
             f"{row['empty']} empty"
         )
     lines.append(
-        f"  {'facies':22}{'plugs':>6}{'porosity':>16}{'k, mD (geometric)':>24}{'grain density':>15}{'Sw':>7}"
+        f"  {'facies':18}{'plugs':>6}{'porosity':>22}{'k, mD (geometric)':>28}{'grain density':>15}{'Sw':>7}"
     )
     core = frame[frame["source"].isin(["core", "whole core", "rotary sidewall"])]
     for facies, group in core.groupby("facies", sort=False):
@@ -112,8 +112,11 @@ def _facies_line(name: str, group: pd.DataFrame) -> str:
     horizontal = group["orientation"] != "vertical"
     k = k[horizontal.reindex(k.index)]
     spread = f"{porosity.mean():.3f} ({porosity.min():.3f}-{porosity.max():.3f})" if len(porosity) else ""
-    perm = f"{np.exp(np.log(k).mean()):.3g} ({k.min():.3g}-{k.max():.3g})" if len(k) else ""
+    perm = ""
+    if len(k):
+        mean, low, high = (f"{float(f'{v:.3g}'):g}" for v in (np.exp(np.log(k).mean()), k.min(), k.max()))
+        perm = f"{mean} ({low}-{high})"
     density, water = group["grain density [g/cm3]"].mean(), group["water saturation [v/v]"].mean()
-    return f"  {name:22}{len(group):>6}{spread:>22}{perm:>24}{density:>9.3f}" + (
+    return f"  {name:18}{len(group):>6}{spread:>22}{perm:>28}{density:>15.3f}" + (
         f"{water:>7.2f}" if water == water else ""
     )

@@ -16,7 +16,7 @@ from corelab.bench import load as loading
 from corelab.bench import settings as lab_settings
 from corelab.bench.parse import Row
 from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
-from corelab.interval import board, life, recovery, select
+from corelab.interval import board, explain, life, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema, store
 from corelab.sheets import SHEETS, STANDARDS_WELL
@@ -80,10 +80,10 @@ class Lab:
             yield connection
 
     @contextmanager
-    def _writing(self) -> Iterator[tuple[sa.Connection, str]]:
-        """A connection that changes the record, and the acting person."""
+    def _writing(self, *, keep: bool = True) -> Iterator[tuple[sa.Connection, str]]:
+        """A connection that changes the record, and the acting person; the changes may only be tried."""
         self._require_file()
-        with engines.writing(self.engine) as connection:
+        with engines.writing(self.engine, keep=keep) as connection:
             migrate.require_current(connection)
             yield connection, self._acting(connection)
 
@@ -143,7 +143,7 @@ class Lab:
         rows = [
             {
                 "setting": n,
-                "value": lab_settings.value(stored, n),
+                "value": lab_settings.shown(stored, n),
                 "unit": lab_settings.SETTINGS[n].unit,
                 "set": "set" if n in stored else "default" if lab_settings.SETTINGS[n].default else "not set",
                 "meaning": lab_settings.SETTINGS[n].note,
@@ -236,17 +236,14 @@ class Lab:
             With every problem of every file; nothing is written.
         """
         say = told or (lambda _: None)
+        self._require_file()
         files, ignored, problems = loading.find_files([Path(p) for p in paths])
         report = loading.LoadReport([shown for _, shown in files], ignored, checked_only=check)
         say(f"reading {len(files)} file{'' if len(files) == 1 else 's'}")
         rows, wrong, report.notices = loading.read_rows(files, decimal_comma=decimal_comma)
         problems += wrong
         say(f"checking {len(rows)} rows")
-        if check:
-            with self._reading() as connection:
-                self._planned(connection, rows, problems, report, reason)
-            return report
-        with self._writing() as (connection, person):
+        with self._writing(keep=not check) as (connection, person):
             planned, identities, stored = self._planned(connection, rows, problems, report, reason)
             if not planned.new and not identities.added:
                 return report
@@ -258,8 +255,12 @@ class Lab:
             computed = compute.keep(connection, plugs, stored)
             report.plugs = len(plugs)
             report.not_computed = compute.not_computed(computed)
+            for n, flag in compute.doubtful(computed):
+                well = identities.name("well", identities.owner("plug", n))
+                report.doubtful.append(f"{identities.name('plug', n)} of {well}: {flag}")
             detail = {"files": loading.file_digests(files), "new": report.new, "corrected": report.corrected}
-            report.seal = self._close(change, person, "sheet load", detail, reason)
+            seal = self._close(change, person, "sheet load", detail, reason)
+            report.seal = "" if check else seal
         return report
 
     def _planned(
@@ -311,6 +312,22 @@ class Lab:
     def _refuse_orphans(self, connection: sa.Connection, row: Mapping[str, Any]) -> None:
         """A run or shot on which plugs in force rest cannot be taken out of force from under them."""
         values = row["values"]
+        if row["kind"] == "plugs":
+            number = values["plug_id"]
+            entries = life.entries_of_plugs(connection, [number], in_force_only=True)
+            resting = entries[~entries["kind"].isin(["plugs", "descriptions"])] if len(entries) else entries
+            if len(resting):
+                identities = store.Identities.read(connection)
+                raise Refused(
+                    [
+                        Problem(
+                            f"{len(resting)} entries in force about plug {identities.name('plug', number)}",
+                            "a plug about which nothing is in force",
+                            "withdraw those first ('corelab plug show' lists their numbers)",
+                        )
+                    ]
+                )
+            return
         if row["kind"] == "core runs":
             plugs = store.in_force(connection, "plugs", [values["run_id"]], by="run_id")
             what = "run"
@@ -420,6 +437,24 @@ class Lab:
             "entries": pd.DataFrame(shown, columns=columns),
             "results": there.rename(columns={"stress_mpa": "stress [MPa]", "value_limit": "limit"}),
         }
+
+    def explain(
+        self, well: str, plug: str, result: str, *, stress: float | None = None, direction: str = ""
+    ) -> dict[str, Any]:
+        """How a result came about: formulas with numbers, readings as typed, instruments, budget.
+
+        Parameters
+        ----------
+        result
+            Its name, such as `porosity` or `klinkenberg permeability`.
+        stress, direction
+            Which one, where there are several; the lowest stress measured where not said.
+        """
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            return explain.explain(
+                connection, identities, well, plug, result, stress_mpa=stress, direction=direction
+            )
 
     def recovery(self, well: str, unit: str = "") -> dict[str, pd.DataFrame]:
         """Core runs and sidewall shots: cut, recovered, lost."""

@@ -61,6 +61,7 @@ _SUFFIX = {
     "g/kg": "g_per_kg",
     "g/L": "g_per_l",
     "1/m": "per_m",
+    "1/MPa": "per_mpa",
     "gAPI": "gapi",
 }
 
@@ -185,6 +186,15 @@ RESULTS = _index(
         _q("slip factor", "b", "absolute pressure", "kPa", 2, NOT_NEGATIVE, (0.1, 5000.0)),
         _q("liquid permeability", "k_l", "permeability", "mD", 4, POSITIVE, (1e-6, 50000.0)),
         _q("inertial coefficient", "beta", "inverse length", "1/m", 0, NOT_NEGATIVE),
+        _q("pore volume compressibility", "c_p", "compressibility", "1/MPa", 6, POSITIVE, (1e-5, 0.1)),
+        _q("permeability stress exponent", "a_k", "", "", 3),
+        _q("pore volume stress exponent", "a_v", "", "", 3),
+        _q("median grain size", "d_50", "grain size", "mm", 3, POSITIVE, (0.001, 64.0)),
+        _q("mean grain size", "M_z", "grain size spread", "phi", 2, (-15.0, 15.0)),
+        _q("sorting", "sigma_I", "grain size spread", "phi", 2, NOT_NEGATIVE, (0.1, 5.0)),
+        _q("skewness", "Sk_I", "", "", 2, (-1.0, 1.0)),
+        _q("kurtosis", "K_G", "", "", 2, NOT_NEGATIVE),
+        _q("trask sorting", "S_o", "", "", 2, (1.0, INFINITY)),
         _q("oil saturation", "S_o", "fraction", "v/v", 3, (0.0, 1.0), (0.0, 1.0)),
         _q("water saturation", "S_w", "fraction", "v/v", 3, (0.0, 1.0), (0.0, 1.0)),
         _q("gas saturation", "S_g", "fraction", "v/v", 3, (0.0, 1.0), (0.0, 1.0)),

@@ -110,6 +110,7 @@ _FACTORS: dict[str, dict[str, float]] = {
     "angle": {"deg": 1.0},
     "salinity by mass": {"g/kg": 1.0, "%w": 10.0, "ppm": 1e-3},
     "salinity by volume": {"g/L": 1.0, "mg/L": 1e-3},
+    "compressibility": {"1/MPa": 1.0, "1/kPa": 1e3, "1/bar": 10.0, "1/psi": 1e3 / _PSI_KPA},
     "inverse length": {"1/m": 1.0, "1/cm": 100.0, "1/ft": 1.0 / 0.3048},
 }
 _GAUGE = {"barg", "kPag", "psig"}

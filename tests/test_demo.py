@@ -81,7 +81,8 @@ def test_routes_are_those_of_the_truth(both: pd.DataFrame) -> None:
 def test_permeability(both: pd.DataFrame) -> None:
     basis = both["true permeability basis"]
     off = (both[K] / both[f"true {K}"] - 1).abs()
-    assert list(both[K].notna()) == list(basis.notna())
+    measured = both[K].notna() & (both["permeability basis"] != "texture")  # an estimate is no measurement
+    assert list(measured) == list(basis.notna())
     for how, tolerance, slip in (
         ("steps", 0.03, "measured"),
         ("two steps", 0.35, "estimated"),

@@ -54,6 +54,8 @@ PINT = {
     "uPa.s": "micropascal*second", "v/v": "dimensionless", "%": "percent", "p.u.": "percent",
     "s": "second", "min": "minute", "h": "hour", "deg": "degree", "g/kg": "gram/kilogram",
     "%w": "percent", "ppm": "ppm", "g/L": "gram/liter", "mg/L": "milligram/liter", "1/m": "1/meter",
+    "1/MPa": "1/megapascal",
+    "1/kPa": "1/kilopascal", "1/bar": "1/bar", "1/psi": "1/pound_force_per_square_inch",
     "1/cm": "1/centimeter", "1/ft": "1/foot", "degC": "degC", "degF": "degF", "K": "kelvin",
 }  # fmt: skip
 #: Symbols that pint does not have, or not in our sense.

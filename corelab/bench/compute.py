@@ -9,7 +9,7 @@ from typing import Any
 
 import sqlalchemy as sa
 
-from corelab.bench import gather, reduce
+from corelab.bench import gather, judge, reduce, uncertainty
 from corelab.records import store
 
 #: Plugs reduced at a time, so that a large laboratory does not fill the memory.
@@ -27,7 +27,10 @@ def compute(
     ordered = sorted(plug_ids)
     for start in range(0, len(ordered), TRAY):
         tray = gather.gather(connection, ordered[start : start + TRAY], stored)
-        made += reduce.rows(tray, reduce.reduce(tray), versions)
+        outcomes = reduce.reduce(tray)
+        uncertainty.add_uncertainties(tray, outcomes)
+        judge.judge(tray, outcomes)
+        made += reduce.rows(tray, outcomes, versions)
     return made
 
 
@@ -60,6 +63,29 @@ def not_computed(rows: Collection[Mapping[str, Any]]) -> list[str]:
         f"{', '.join(q for q, _ in found)}: {reason} ({max(c for _, c in found)})"
         for reason, found in sorted(of_reason.items())
     ]
+
+
+#: Flags that ask a technician to look at the readings again.
+_ASKING = (
+    "outside the usual range",
+    "does not fit the described lithology",
+    "disagree beyond",
+    "uneven plug",
+    "differ in pressure",
+    "scatter more than",
+    "not less than the bulk volume",
+)
+
+
+def doubtful(rows: Collection[Mapping[str, Any]]) -> list[tuple[int, str]]:
+    """The plugs, by number, of which a result asks for a second look at the readings, and why."""
+    found: dict[tuple[int, str], None] = {}
+    for row in rows:
+        for flag in row["flags"].split("; ") if row["flags"] else ():
+            if any(words in flag for words in _ASKING):
+                shown = f" ({row['quantity']} {row['value']:.4g})" if row["quantity"] in flag else ""
+                found[row["plug_id"], flag + shown] = None
+    return list(found)
 
 
 _COMPARED = (

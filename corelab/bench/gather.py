@@ -14,6 +14,7 @@ import sqlalchemy as sa
 from numpy.typing import NDArray
 
 from corelab.bench import settings as lab_settings
+from corelab.control.instruments import Register
 from corelab.records import store
 
 Numbers = NDArray[Any]  # float64; complex where a derivative is taken by a complex step
@@ -34,9 +35,11 @@ KINDS = (
     "liquid permeability",
     "distillation",
     "retort",
+    "sieve",
+    "descriptions",
 )
-#: Those of them that rest on the calibration of a porosimeter.
-EXPANSIONS = ("grain volume", "pore volume")
+#: Those of them that rest on the calibration of a porosimeter, with its setup.
+EXPANSIONS = {"grain volume": "cup", "pore volume": "holder"}
 
 
 @dataclass(slots=True)
@@ -77,21 +80,55 @@ class CalibrationRows:
     name: str
     date: str
     readings: Readings
+    number: int = 0  # its own within the tray
+    offset: tuple[complex, complex] = (0.0, 0.0)  # added to the volumes found, to take derivatives
 
 
 @dataclass(slots=True)
 class Tray:
-    """All that the results of some plugs depend on."""
+    """All that the results of some plugs depend on.
+
+    The steps are zero but where a derivative is taken: they are added to what is assumed rather than read.
+    """
 
     plug_ids: Whole
     readings: dict[str, Readings]
     calibrations: dict[tuple[int, str], list[CalibrationRows]]
     barometer_kpa: float
     temperature_degc: float
+    register: Register
     fingerprints: list[str] = field(default_factory=list)
+    barometer_step: complex = 0.0
+    temperature_step: complex = 0.0
+    slip_step: complex = 0.0
+    #: Corrections that are made only when the laboratory asks for them.
+    helium_correction: bool = False
+    cup_correction: bool = False
+    #: The calibrations in force, found when first asked for.
+    in_force: dict[str, list[int | str]] = field(default_factory=dict)
+    #: What the reduction finds once and the passes that take derivatives share: groups, labels.
+    found: dict[str, Any] = field(default_factory=dict)
 
     def __len__(self) -> int:
         return len(self.plug_ids)
+
+    def choices(self, kind: str) -> list[int | str]:
+        """For each row of an expansion: the number of the calibration in force, or why none is."""
+        if kind not in self.in_force:
+            self.in_force[kind] = _choices(self, kind, EXPANSIONS[kind])
+        return self.in_force[kind]
+
+    def calibration(self, number: int) -> CalibrationRows:
+        return next(c for found in self.calibrations.values() for c in found if c.number == number)
+
+    def calibration_users(self) -> dict[int, set[int]]:
+        """The calibrations in force for any reading, with the places of the plugs that rest on them."""
+        users: dict[int, set[int]] = {}
+        for kind in EXPANSIONS:
+            for place, choice in zip(self.readings[kind].at.tolist(), self.choices(kind), strict=True):
+                if isinstance(choice, int):
+                    users.setdefault(choice, set()).add(place)
+        return users
 
 
 def gather(connection: sa.Connection, plug_ids: Collection[int], stored: Mapping[str, str]) -> Tray:
@@ -110,6 +147,9 @@ def gather(connection: sa.Connection, plug_ids: Collection[int], stored: Mapping
         calibrations,
         lab_settings.number(stored, "barometric pressure"),
         lab_settings.number(stored, "laboratory temperature"),
+        Register.read(connection),
+        helium_correction=lab_settings.value(stored, "helium compressibility correction") == "on",
+        cup_correction=lab_settings.value(stored, "cup temperature correction") == "on",
     )
     tray.fingerprints = _fingerprints(tray, stored)
     return tray
@@ -132,8 +172,24 @@ def _calibrations(rows: pd.DataFrame) -> dict[tuple[int, str], list[CalibrationR
         key = (int(group["instrument_id"].iloc[0]), str(group["setup"].iloc[0]))
         name = label or date or "undated"
         readings = Readings.of(group, np.zeros(len(group), dtype=np.intp))
-        found[key].append(CalibrationRows(*key, name, date, readings))
+        number = sum(map(len, found.values()))
+        found[key].append(CalibrationRows(*key, name, date, readings, number))
     return found
+
+
+def _choices(tray: Tray, kind: str, setup: str) -> list[int | str]:
+    """For each row: the number of the calibration in force, why none is, or nothing where none is needed."""
+    readings = tray.readings[kind]
+    instruments = readings.number("instrument_id").astype(np.intp).tolist()
+    needed = ~np.isnan(readings.number("expanded_pressure_kpa"))
+    found: dict[tuple[int, str], int | str] = {}
+    choices: list[int | str] = []
+    for instrument, date, wanted in zip(instruments, readings.texts["measured_on"], needed, strict=True):
+        if wanted and (instrument, date) not in found:
+            choice = in_force(tray.calibrations.get((instrument, setup), []), date)
+            found[instrument, date] = choice if isinstance(choice, str) else choice.number
+        choices.append(found[instrument, date] if wanted else "")
+    return choices
 
 
 def in_force(candidates: Sequence[CalibrationRows], date: str) -> CalibrationRows | str:
@@ -169,6 +225,18 @@ def _on_or_before(calibration: str, reading: str) -> bool:
     return calibration <= reading
 
 
+def _instruments(tray: Tray) -> list[set[int]]:
+    """For each plug, the instruments that read it."""
+    used: list[set[int]] = [set() for _ in range(len(tray))]
+    for readings in tray.readings.values():
+        for name in ("instrument_id", "balance_id", "caliper_id", "permeameter_id"):
+            if name in readings.numbers:
+                for place, number in zip(readings.at.tolist(), readings.numbers[name].tolist(), strict=True):
+                    if number == number:
+                        used[place].add(int(number))
+    return used
+
+
 def _fingerprints(tray: Tray, stored: Mapping[str, str]) -> list[str]:
     """For each plug, a digest of all entries and settings on which its results may depend."""
     digests: list[list[str]] = [[] for _ in range(len(tray))]
@@ -185,6 +253,8 @@ def _fingerprints(tray: Tray, stored: Mapping[str, str]) -> list[str]:
         used = set(zip(readings.at.tolist(), readings.number("instrument_id").tolist(), strict=True))
         for place, instrument in used:
             digests[place] += of_instrument[int(instrument)]
+    for place, instruments in enumerate(_instruments(tray)):
+        digests[place] += [tray.register.digest_text(number) for number in sorted(instruments)]
     moving = [s.name for s in lab_settings.SETTINGS.values() if s.moves_results]
     common = [f"{name}={lab_settings.value(stored, name)}" for name in moving]
     return [hashlib.sha256("\n".join([*sorted(own), *common]).encode()).hexdigest() for own in digests]

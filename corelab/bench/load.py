@@ -39,6 +39,7 @@ class LoadReport:
     corrected: dict[str, int] = field(default_factory=dict)
     notices: list[Problem] = field(default_factory=list)
     not_computed: list[str] = field(default_factory=list)
+    doubtful: list[str] = field(default_factory=list)
     plugs: int = 0
     seal: str = ""
     checked_only: bool = False
@@ -198,7 +199,8 @@ def plan(
         frame = _recorded(connection, SHEETS[kind], of_kind)
         recorded[kind] = frame
         faulty = [row for row in rows if row.sheet.kind == kind and id(row) not in usable]
-        _sort_out(SHEETS[kind], of_kind, faulty, frame, reason, planned, stood_in_for, problems)
+        gone = _recorded(connection, SHEETS[kind], of_kind, superseded=True)
+        _sort_out(SHEETS[kind], of_kind, faulty, frame, gone, reason, planned, stood_in_for, problems)
     wells = {identities.owner("run", r.values["run_id"]) for r in tied if r.sheet.kind == "core runs"}
     wells |= {identities.owner("plug", r.values["plug_id"]) for r in tied if r.sheet.kind == "plugs"}
     wells |= {identities.owner("run", r.values["run_id"]) for r in tied if r.sheet.kind == "core sections"}
@@ -251,9 +253,10 @@ def subject_field(sheet: Sheet) -> str:
     }[sheet.subject]
 
 
-def _recorded(connection: sa.Connection, sheet: Sheet, rows: list[Row]) -> Any:
+def _recorded(connection: sa.Connection, sheet: Sheet, rows: list[Row], *, superseded: bool = False) -> Any:
     by = subject_field(sheet)
-    return store.in_force(connection, sheet.kind, {row.values[by] for row in rows}, by=by)
+    subjects = {row.values[by] for row in rows}
+    return store.in_force(connection, sheet.kind, subjects, by=by, superseded=superseded)
 
 
 def _key(values: Mapping[str, Any], fields: Sequence[str]) -> tuple[Any, ...]:
@@ -279,6 +282,7 @@ def _sort_out(
     rows: list[Row],
     faulty: list[Row],
     frame: Any,
+    gone: Any,
     reason: str,
     planned: Planned,
     stood_in_for: set[int],
@@ -292,6 +296,9 @@ def _sort_out(
         known[(*_key(record, key_fields), record.get("repeat"))] = record
     if sheet.reading:
         _number_repeats(rows, key_fields, problems)
+    voided: dict[tuple[Any, ...], list[dict[str, Any]]] = {}
+    for record in gone.to_dict("records"):
+        voided.setdefault((*_key(record, key_fields), record.get("repeat")), []).append(record)
     seen: dict[tuple[Any, ...], Row] = {}
     uncounted = {_names(row) for row in faulty}  # beside a row left out, repeats are counted wrongly
     report = planned.report
@@ -327,6 +334,19 @@ def _sort_out(
                 continue
             supersedes = int(old["id"])
             planned.touched.append((sheet.kind, old))
+        elif not reason:
+            void = [r for r in voided.get(key, []) if all(_same(values.get(f), r.get(f)) for f in fields)]
+            if void:
+                report.unchanged[sheet.kind] = report.unchanged.get(sheet.kind, 0) + 1
+                report.notices.append(
+                    row.problem(
+                        "",
+                        f"the entries of {sheet.kind} {int(void[-1]['id'])}, withdrawn or corrected before",
+                        "nothing that was taken out of force",
+                        "it was left out; load it with --reason to bring it back",
+                    )
+                )
+                continue
         counts = report.corrected if supersedes else report.new
         counts[sheet.kind] = counts.get(sheet.kind, 0) + 1
         planned.touched.append((sheet.kind, values))
@@ -390,14 +410,16 @@ def affected_plugs(
     plugs: set[int] = set()
     instruments: set[int] = set()
     for kind, values in touched:
-        if kind == "porosimeter calibration":
+        if kind in {"porosimeter calibration", "instruments"}:
             instruments.add(int(values["instrument_id"]))
         elif values.get("plug_id") is not None and "plug_id" in SHEET_TABLES[kind].c:
             plugs.add(int(values["plug_id"]))
         elif kind == "standards":
             plugs.add(int(values["standard_id"]))
-    for kind in ("grain volume", "pore volume") if instruments else ():
-        plugs |= set(store.in_force(connection, kind, instruments, by="instrument_id")["plug_id"])
+    for kind, table in SHEET_TABLES.items() if instruments else ():
+        for by in ("instrument_id", "balance_id", "caliper_id", "permeameter_id"):
+            if by in table.c and "plug_id" in table.c:
+                plugs |= set(store.in_force(connection, kind, instruments, by=by)["plug_id"].tolist())
     return plugs
 
 

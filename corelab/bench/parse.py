@@ -270,6 +270,8 @@ def _outside(column: Column, value: float, unit: units.Unit | None) -> tuple[str
 
 def _as_entered(cell: Cell) -> object:
     """The cell as it is kept for ever: text and numbers as they were, the rest in words."""
+    if isinstance(cell, datetime) and cell.time() == time():
+        return cell.date().isoformat()
     if isinstance(cell, (datetime, date, time)):
         return cell.isoformat()
     if isinstance(cell, Percent):
@@ -387,12 +389,18 @@ def _whole(cell: Cell) -> int:
     raise _Fault(quoted(text), "a whole number from 1 on", "type 1, 2, 3 …, or leave it empty")
 
 
+#: Symbols that benches write for words.
+_CODES = {"n2": "nitrogen", "he": "helium", "h": "horizontal", "v": "vertical", "hg": "mercury"}
+
+
 def _choice(column: Column) -> Convert:
     known = {_plain(c): c for c in column.choices}
     listed = ", ".join(column.choices)
 
     def one(text: str) -> str:
         found = known.get(_plain(text))
+        if found is None and (spelled := _CODES.get(_normal(text))) in column.choices:
+            found = spelled
         if found is None:
             hint = did_you_mean(text, column.choices)
             raise _Fault(

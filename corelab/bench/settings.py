@@ -56,6 +56,20 @@ SETTINGS: Mapping[str, Setting] = MappingProxyType(
                 moves_results=True,
             ),
             Setting(
+                "helium compressibility correction",
+                "Whether pressures of gas expansions are corrected for helium's compressibility.",
+                "off",
+                choices=("off", "on"),
+                moves_results=True,
+            ),
+            Setting(
+                "cup temperature correction",
+                "Whether grain volumes are corrected for a cup warmer than the reference chamber.",
+                "off",
+                choices=("off", "on"),
+                moves_results=True,
+            ),
+            Setting(
                 "reporting mean pressure",
                 "The gas permeability step nearest to it is the one reported.",
                 "200",
@@ -150,6 +164,12 @@ def checked(name: str, typed: str) -> str:
 def value(stored: Mapping[str, str], name: str) -> str:
     """A setting in force, as text: what was set, else its default."""
     return stored.get(name, SETTINGS[name].default)
+
+
+def shown(stored: Mapping[str, str], name: str) -> str:
+    """A setting in force as it is shown: without the last bits of a conversion."""
+    text = value(stored, name)
+    return f"{float(text):.8g}" if SETTINGS[name].kind and text else text
 
 
 def number(stored: Mapping[str, str], name: str) -> float:

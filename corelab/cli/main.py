@@ -271,6 +271,9 @@ def _tell_load(report: LoadReport) -> None:
     if report.notices:
         show.tell(f"Worth a question ({len(report.notices)}):")
         show.print_lines([f"  {notice}" for notice in report.notices], 40)
+    if report.doubtful:
+        show.tell(f"Results that ask for a second look at the readings ({len(report.doubtful)}):")
+        show.print_lines([f"  {line}" for line in report.doubtful], 40)
     would = "Would be " if report.checked_only else ""
     counted(f"{would}new" if would else "New", report.new)
     counted(f"{would}corrected" if would else "Corrected", report.corrected)
@@ -331,6 +334,29 @@ def plug_show(well: Well, plug: Plug, form: TableOrJson = "table") -> None:
     _show_parts(found, form, wrap="entry")
 
 
+@plug_app.command("explain")
+def plug_explain(
+    well: Well,
+    plug: Plug,
+    result: Annotated[str, typer.Argument(metavar="RESULT", help="Name of a result, such as porosity.")],
+    stress: Stress = None,
+    direction: Annotated[
+        str, typer.Option(metavar="axial|max|90|vertical", help="Which direction of flow.")
+    ] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """How a result came about, from the entered readings to the number with its uncertainty."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.explain(well, plug, result, stress=stress, direction=direction)
+    if form == "json":
+        show.print_json([found])
+    else:
+        from corelab.cli import explained
+
+        explained.print_explanation(found)
+
+
 @person_app.command("add")
 def person_add(
     name: Annotated[str, typer.Argument(metavar="NAME", help="The person's name.")],
@@ -382,6 +408,8 @@ def interval(
     forms = ("table", "csv", "json", "parquet")
     suffix = out.suffix.lower().removeprefix(".") if out else ""
     form = _one_of("--format", form or (suffix if suffix in forms else "table"), *forms)
+    if out is not None and out.suffix.lower() in {".xlsx", ".xls", ".ods"}:
+        raise Usage(f"For a workbook use 'corelab write workbook {well} --out {out.name}'.")
     if form == "parquet" and out is None:
         raise Usage("Parquet is for files: name one with --out FILE.")
     with _lab() as lab:

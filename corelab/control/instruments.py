@@ -45,7 +45,9 @@ class Stated:
         if self.unit == SHARE:
             size = np.abs(readings) / 100.0
         else:
-            size = np.full(np.shape(readings), _factor(self.unit, measure, stored_unit))
+            size = np.where(np.isnan(readings), np.nan, _factor(self.unit, measure, stored_unit))
+        if measure == "billet":  # no billet, no error
+            size = np.where(readings == 0.0, 0.0, size)
         return self.repeatability * size, self.scale * size
 
 
@@ -157,6 +159,8 @@ CALIBRATION_READINGS: tuple[Reading, ...] = (
 
 _OWN_DEFAULTS: Mapping[str, Stated] = MappingProxyType(
     {
+        "temperature": Stated(0.1, 0.2, "K", "calibrated laboratory thermometer: common practice", False),
+        "barometer read": Stated(0.02, 0.05, "kPa", "calibrated barometer: common practice", False),
         "billet": Stated(0.0, 0.002, "cm3", "billets certified to a few mm3: common practice", False),
         "salinity": Stated(0.0, 1.0, SHARE, "brine made up or analysed to 1 %: common practice", False),
         "viscosity": Stated(0.0, 1.0, SHARE, "tabulated or measured to 1 %: common practice", False),
@@ -178,6 +182,8 @@ def default(measure: str) -> Stated:
     record = DEFAULTS[measure]
     return Stated(record.repeatability, record.scale, record.unit, record.source, False)
 
+
+BY_FIELD: Mapping[tuple[str, str], Reading] = MappingProxyType({(r.kind, r.field): r for r in READINGS})
 
 #: A value that an instrument reports as a result rests on its own register row of this measure, if any.
 _REGISTERED_AS = {"reported grain volume": "volume"}
@@ -208,6 +214,26 @@ class Register:
     def stated(self, instrument: int, measure: str) -> Stated:
         registered = self.rows.get((instrument, _REGISTERED_AS.get(measure, measure)))
         return registered if registered is not None else default(measure)
+
+    def rests_on_default(self, instrument: int, measure: str) -> bool:
+        """Whether an instrument states nothing of what it measures.
+
+        What a registered instrument shows beside it (the temperature of its gas) needs no row of its own.
+        """
+        if measure == "temperature" and any(number == instrument for number, _ in self.rows):
+            return False
+        return not self.stated(instrument, measure).registered
+
+    def amounts(
+        self, reading: Reading, values: Floats, instruments: NDArray[np.intp]
+    ) -> tuple[Floats, Floats]:
+        """Repeatability and scale uncertainty of readings by these instruments, in the stored unit."""
+        random, shared = np.full(values.shape, np.nan), np.full(values.shape, np.nan)
+        for number in np.unique(instruments):
+            here = instruments == number
+            stated = self.stated(int(number), reading.measure)
+            random[here], shared[here] = stated.of(values[here], reading.measure, reading.unit)
+        return random, shared
 
     def name(self, instrument: int) -> str:
         return self.names.get(instrument, "an instrument without a name")

@@ -22,7 +22,8 @@ def core_runs(connection: sa.Connection, identities: store.Identities, well: int
     metre, target = units.unit("m", "length"), units.unit(unit, "length")
 
     def shown(metres: object) -> np.ndarray[tuple[int, ...], np.dtype[np.float64]]:
-        return np.asarray(units.convert(np.asarray(metres, dtype=np.float64), metre, target))
+        lengths = np.asarray(units.convert(np.asarray(metres, dtype=np.float64), metre, target))
+        return lengths.round(9)  # a depth typed in feet comes back as typed
 
     cut = (runs["base_depth_m"] - runs["top_depth_m"]).to_numpy()
     recovered = runs["recovered_length_m"].to_numpy()

@@ -15,9 +15,12 @@ from numpy.typing import NDArray
 
 from corelab import units
 from corelab.bench import settings as lab_settings
-from corelab.bench.reduce import REPORTED, STRESS_NOT_STATED
+from corelab.bench.outcome import STRESS_NOT_STATED
+from corelab.bench.reduce import REPORTED
+from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
 from corelab.interval import where as conditions
+from corelab.interval.stress import near, with_interpolated
 from corelab.quantities import RESULTS
 from corelab.records import store
 from corelab.sheets.readings import DIRECTIONS, GASES
@@ -76,7 +79,6 @@ _VOLUMES = (
 _SATURATIONS = ("oil saturation", "water saturation", "gas saturation")
 #: What changes with the net confining stress; masses, grains and the ambient saturations do not.
 _UNDER_STRESS = frozenset({"bulk volume", "pore volume", "porosity", "bulk density"})
-_SAME_STRESS_MPA = 0.005
 #: A depth typed in feet comes back as typed, without the last bits of two conversions.
 _DEPTH_DECIMALS = 9
 
@@ -272,6 +274,8 @@ def _add_results(
     results = store.results(connection, set(ids.tolist()))
     place = pd.Series(np.arange(len(ids)), index=ids)
     results = results.assign(place=place.reindex(results["plug_id"]).to_numpy())
+    if stress_mpa is not None:
+        results = with_interpolated(results, stress_mpa)
     for column in COLUMNS[len(REGISTERED) :]:
         frame[column] = "" if column in TEXT_COLUMNS else np.nan
     for column in COMPUTED:
@@ -290,6 +294,8 @@ def _add_results(
             _set(frame, "porosity route", at, there["basis"].to_numpy())
             _set(frame, "porosity stress [MPa]", at, there["stress_mpa"].to_numpy())
     _add_permeability(frame, results, stored, stress_mpa, doubts, reasons)
+    for number, words in store.crush_verdicts(connection, set(ids.tolist())):
+        doubts[int(place[number])][words] = None
     frame["flags"] = [_joined(d, r) for d, r in zip(doubts, reasons, strict=True)]
 
 
@@ -325,8 +331,9 @@ def _one_stress(candidates: pd.DataFrame, stress_mpa: float | None, *then: str) 
 
 def _stressed(rows: pd.DataFrame, stress_mpa: float) -> pd.Series[bool]:
     """Which results were measured at a stress; one whose stress is not stated was measured at none."""
-    near = (rows["stress_mpa"] - stress_mpa).abs() <= max(_SAME_STRESS_MPA, 0.005 * stress_mpa)
-    return near & ~rows["flags"].str.contains(STRESS_NOT_STATED, regex=False).astype(bool)
+    return near(rows["stress_mpa"], stress_mpa) & ~rows["flags"].str.contains(
+        STRESS_NOT_STATED, regex=False
+    ).astype(bool)
 
 
 def _put(
@@ -374,6 +381,10 @@ def _add_permeability(
     rank_basis = {"measured": 0, "reported": 1, "estimated": 2}
     rank_gas = {g: i for i, g in enumerate(("nitrogen", "air", "helium", "reported"))}
     k = results[results["quantity"] == "klinkenberg permeability"]
+    # An estimate from texture stands only where nothing was measured or reported.
+    by_texture = k["step"] == TEXTURE
+    known = k.loc[~by_texture & k["value"].notna(), "place"]
+    k = k[~by_texture | (~k["place"].isin(known) & (stress_mpa is None))]
     slips = results[results["quantity"] == "slip factor"]
     key = ["place", "direction", "stress_mpa", "step"]
     slips = slips.set_index(key)[["value", "uncertainty", "basis"]].add_prefix("slip_")
@@ -396,9 +407,11 @@ def _add_permeability(
     )
     _set(frame, "slip basis", at, basis)
     reported = (there["step"] == REPORTED).to_numpy()
-    _set(frame, "permeability basis", at, np.where(reported, "reported", "measured"))
+    texture = (there["step"] == TEXTURE).to_numpy()
+    basis = np.where(texture, "texture", np.where(reported, "reported", "measured"))
+    _set(frame, "permeability basis", at, basis)
     stated = ~there["flags"].str.contains(STRESS_NOT_STATED, regex=False).to_numpy(dtype=np.bool_)
-    _set(frame, "permeability stress [MPa]", at, np.where(stated, there["stress_mpa"], np.nan))
+    _set(frame, "permeability stress [MPa]", at, np.where(stated & ~texture, there["stress_mpa"], np.nan))
     _add_step(frame, results, k, lab_settings.number(stored, "reporting mean pressure"), stress_mpa, doubts)
     known = frame["klinkenberg permeability [mD]"].notna()
     gas = frame["gas permeability [mD]"].notna()

@@ -125,8 +125,11 @@ def reading(engine: sa.Engine) -> Iterator[sa.Connection]:
 
 
 @contextmanager
-def writing(engine: sa.Engine) -> Iterator[sa.Connection]:
-    """All or nothing, one writer at a time: the state read here cannot change before it is written."""
+def writing(engine: sa.Engine, *, keep: bool = True) -> Iterator[sa.Connection]:
+    """All or nothing, one writer at a time: the state read here cannot change before it is written.
+
+    Without `keep` everything is undone at the end: a trial.
+    """
     with (
         trouble_named(engine),
         engine.connect().execution_options(corelab_mode="IMMEDIATE") as connection,
@@ -135,6 +138,8 @@ def writing(engine: sa.Engine) -> Iterator[sa.Connection]:
         if engine.dialect.name == "postgresql":
             connection.exec_driver_sql(f"SELECT pg_advisory_xact_lock({WRITER_LOCK})")
         yield connection
+        if not keep:
+            connection.rollback()
 
 
 @contextmanager

@@ -207,9 +207,16 @@ def _superseded(entry_id: sa.ColumnElement[int]) -> sa.ColumnElement[bool]:
 
 
 def in_force(
-    connection: sa.Connection, kind: str, ids: Collection[int] | None = None, by: str = "plug_id"
+    connection: sa.Connection,
+    kind: str,
+    ids: Collection[int] | None = None,
+    by: str = "plug_id",
+    *,
+    superseded: bool = False,
 ) -> pd.DataFrame:
     """The rows of a kind that are in force, oldest first: typed values, and `event` and `digest`.
+
+    With `superseded`, those that are not: corrected or withdrawn.
 
     Parameters
     ----------
@@ -220,7 +227,7 @@ def in_force(
     query = (
         sa.select(table, schema.entry.c.event, schema.entry.c.digest)
         .join(schema.entry, schema.entry.c.id == table.c.id)
-        .where(~_superseded(table.c.id))
+        .where(_superseded(table.c.id) if superseded else ~_superseded(table.c.id))
         .order_by(table.c.id)
     )
     wanted = None
@@ -437,3 +444,20 @@ def entries_by_event(connection: sa.Connection, well_id: int, plug_ids: Collecti
 def events(connection: sa.Connection) -> pd.DataFrame:
     """Every event, first to last."""
     return frame_of(connection, sa.select(schema.event).order_by(schema.event.c.number))
+
+
+def crush_verdicts(connection: sa.Connection, plug_ids: Collection[int]) -> list[tuple[int, str]]:
+    """What persons judged of plugs: the plug, and the verdict in words."""
+    words = {
+        "yes": "judged crushed",
+        "no": "judged not crushed",
+        "unsure": "judged uncertain whether crushed",
+    }
+    return [
+        (
+            int(row["plug_id"]),
+            f"{words[row['crushed']]} by {row['judged_by']}"
+            + (f" ({row['seen_in']})" if row["seen_in"] else ""),
+        )
+        for row in rows_of(in_force(connection, "crush verdicts", plug_ids))
+    ]

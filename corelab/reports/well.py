@@ -53,11 +53,11 @@ def report(
         )
     return WellReport(
         well=identities.name("well", number),
-        cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person),
+        cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person, entries),
         core_runs=runs.iloc[:-1],  # the workbook makes its own totals
         shots=shots,
         results=results,
-        methods=used,
+        methods=[{**m, "source": m["source"].replace(" (from memory)", "")} for m in used],
         provenance=_provenance(entries, identities),
         cautions=_cautions(entries),
         remarks=remarks,
@@ -75,6 +75,7 @@ def _cover(
     runs: pd.DataFrame,
     results: pd.DataFrame,
     person: str,
+    entries: pd.DataFrame,
 ) -> dict[str, str | float | None]:
     job: dict[str, Any] = {}
     job_name = ""
@@ -103,11 +104,19 @@ def _cover(
         "depth datum": fact.get("depth_datum"),
         "units": "as the headings say; porosity and saturations as fractions, permeability in millidarcy",
         "results": "at the lowest net confining stress measured; saturations of the ambient pore volume",
+        "plugs": float(len(results)),
+        "measured": _period(entries),
         "written on": history.now_utc()[:16].replace("T", " ") + " UTC",
         "written by": person,
         "program": f"corelab {__version__}",
         "seal": history.last_seal(connection),
     }
+
+
+def _period(entries: pd.DataFrame) -> str:
+    """From the first to the last day on which something was measured."""
+    days = sorted({str(d)[:10] for d in entries["measured_on"] if d}) if len(entries) else []
+    return "" if not days else days[0] if days[0] == days[-1] else f"{days[0]} to {days[-1]}"
 
 
 def _last(frame: pd.DataFrame) -> dict[str, Any]:
@@ -120,15 +129,28 @@ def used_methods(connection: sa.Connection, plug_ids: list[int]) -> list[dict[st
     from corelab.science.catalogue import formulas
 
     known = formulas()
-    methods = [
-        m for text in store.results(connection, plug_ids)["method"].unique() for m in text.split(" + ")
-    ]
-    return [described(known[key]) for key in sorted(set(methods)) if key in known]
+    stored = store.results(connection, plug_ids)["method"].unique()
+    methods = {m for text in stored for m in text.split(" + ")}
+    for key in list(methods):
+        methods |= set(_RESTS_ON.get(key, ()))
+    return [described(known[key]) for key in known if key in methods]
+
+
+#: The calculations that stand behind another without giving a result of their own.
+_RESTS_ON: Mapping[str, tuple[str, ...]] = {
+    "grain-volume-gas-expansion": ("calibration-cup",),
+    "pore-volume-gas-expansion": ("calibration-holder",),
+    "gas-permeability": ("gas-viscosity", "flow-rate-conversion"),
+    "bulk-volume-displacement": ("mercury-density",),
+    "saturations": ("water-mass", "brine-volume", "oil-mass"),
+}
+#: Arguments of an estimator that are no quantity of an equation.
+_NO_QUANTITY = {"group", "refused", "demanded", "rising", "covariance", "covariance_md_kpa"}
 
 
 def described(formula: Any) -> dict[str, str]:
     """One calculation in words: what `methods` shows and the workbook prints."""
-    symbols = [*formula.inputs, *formula.outputs]
+    symbols = [s for s in (*formula.inputs, *formula.outputs) if s.name not in _NO_QUANTITY]
     return {
         "key": formula.key,
         "version": str(formula.version),
@@ -144,7 +166,7 @@ def described(formula: Any) -> dict[str, str]:
 
 
 def _provenance(entries: pd.DataFrame, identities: store.Identities) -> pd.DataFrame:
-    readings = {sheet.kind for sheet in READINGS}
+    shown = {sheet.kind for sheet in READINGS} | {"treatments", "descriptions", "not measured"}
     rows = [
         {
             "plug": identities.name("plug", int(e["plug_id"])),
@@ -165,7 +187,7 @@ def _provenance(entries: pd.DataFrame, identities: store.Identities) -> pd.DataF
             ),
         }
         for e in (entries.to_dict("records") if len(entries) else [])
-        if e["kind"] in readings
+        if e["kind"] in shown
     ]
     columns = [
         "plug", "kind", "reading", "measured on", "measured by", "instrument",

@@ -206,7 +206,8 @@ def _numbers(frame: pd.DataFrame, name: str) -> pd.Series:
 def _flags(text: object) -> list[str]:
     """The flags in a text of flags, each once, in their order."""
     parts = (part.strip() for part in str(plain(text) or "").split(";"))
-    return list(dict.fromkeys(part for part in parts if part))
+    # An empty cell says by itself that nothing was read.
+    return list(dict.fromkeys(part for part in parts if part and not part.endswith(": no readings")))
 
 
 def _of_significance(value: float, digits: int) -> str:
@@ -491,11 +492,6 @@ def _cover(sheet: Worksheet, report: WellReport) -> None:
     if many:
         told = f"{many} caution{'s' if many > 1 else ''}; in full on the sheet 'cautions and remarks'."
         row = _paragraph(sheet, row, told, 2)
-        for caution in report.cautions[:3]:
-            short = caution if len(caution) <= 180 else caution[:179].rstrip() + "…"
-            row = _paragraph(sheet, row, f"• {short}", 2)
-        if many > 3:
-            row = _paragraph(sheet, row, f"… and {many - 3} more.", 2, "quiet")
     else:
         row = _paragraph(sheet, row, "None was raised.", 2)
 
@@ -582,8 +578,9 @@ def _results(
         heading = _column(plugs, name)
         if heading is None:
             continue
-        held = {plain(value) for value in plugs[heading]} - {None}
-        if name in SAID_ONCE and len(held) == 1:
+        every = {plain(value) for value in plugs[heading]}
+        held = every - {None}
+        if name in SAID_ONCE and len(held) == 1 and every == held:
             (value,) = held
             unit = _unit(heading)
             once.append(

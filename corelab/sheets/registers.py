@@ -2,9 +2,27 @@
 
 from __future__ import annotations
 
-from corelab.quantities import RESULTS
 from corelab.sheets.declaration import Column, Sheet, choice, date, name, number, text
 
+#: Results for which a standard may carry a certified value.
+CERTIFIABLE = (
+    "bulk volume",
+    "grain volume",
+    "pore volume",
+    "dry mass",
+    "porosity",
+    "grain density",
+    "bulk density",
+    "gas permeability",
+    "mean pressure",
+    "klinkenberg permeability",
+    "slip factor",
+    "liquid permeability",
+    "inertial coefficient",
+    "oil saturation",
+    "water saturation",
+    "gas saturation",
+)
 SORTING_SCALES = ("folk", "trask")
 _WELL = name("well", "The well's name, as in the register of wells.", refers="well", required=True, key=True)
 _PLUG = name("plug", "The plug's name, as marked on it.", refers="plug", required=True, key=True)
@@ -326,7 +344,7 @@ CERTIFIED_VALUES = Sheet(
     "standard",
     (
         name("standard", "The standard's name.", refers="standard", required=True, key=True),
-        choice("result", "Which result is certified.", *RESULTS, required=True, key=True),
+        choice("result", "Which result is certified.", *CERTIFIABLE, required=True, key=True),
         number("certified value", "Value of the certificate.", required=True),
         Column("unit", "unit", "Its unit.", required=True),
         number(

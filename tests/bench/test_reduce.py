@@ -324,10 +324,15 @@ def store_frame(lab: Lab, kind: str) -> pd.DataFrame:
         return store.in_force(connection, kind)
 
 
-def test_a_warmer_cup_is_allowed_for_where_both_temperatures_are_read(bench: Lad) -> None:
+def test_a_warmer_cup_is_allowed_for_only_where_that_is_asked(bench: Lad) -> None:
     bench(calibration("", ""))
     heading = EXPANSION_HEADING + ",temperature [degC],cup temperature [degC]"
     bench(("grain volume", heading, "W,A,POR,800,380,100,,20,23", "W,B,POR,800,380,100,,,23"))
+    assert bench.row()[GRAIN] == pytest.approx(15.0)
+    assert "cup warmer than the reference chamber, not corrected" in bench.row()["flags"]
+    assert "cup" not in bench.row("B")["flags"]
+    bench.lab.setting("cup temperature correction", "on")
+    assert "cup" not in bench.row()["flags"]
     # V_r p1/T_r + S pa/T_c = V_r p2/T_r + S p2/T_c
     assert bench.row()[GRAIN] == pytest.approx(30 - 10 * 420 / 280 * 296.15 / 293.15)
     assert bench.row("B")[GRAIN] == pytest.approx(15.0)
@@ -882,7 +887,9 @@ def test_law_whatever_is_missing_each_result_is_a_value_or_a_reason(
                 column[rng.random(len(column)) < blank] = np.nan
         texts = {name: column[rows] for name, column in full.texts.items()}
         readings[kind] = gather.Readings(full.at[rows], numbers, texts)
-    some = gather.Tray(tray.plug_ids, readings, tray.calibrations, np.nan, 20.0, [""] * len(tray))
+    some = gather.Tray(
+        tray.plug_ids, readings, tray.calibrations, np.nan, 20.0, tray.register, [""] * len(tray)
+    )
     made = rows_of(some, reduce(some), {})
     keys = [(r["plug_id"], r["quantity"], r["direction"], r["stress_mpa"], r["step"]) for r in made]
     assert len(set(keys)) == len(keys)

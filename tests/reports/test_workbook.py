@@ -248,7 +248,7 @@ def test_sheets_and_contents(book: openpyxl.Workbook) -> None:
     links = [cell.hyperlink.location for row in book["cover"].iter_rows() for cell in row if cell.hyperlink]
     assert links == [f"'{name}'!A1" for name in SHEETS[1:]]
     assert {"7121/8-1", "J-1", "0123456789abcdef0123", "not stated"} <= set(texts(book["cover"]))
-    assert any("Mind the barometer." in text for text in texts(book["cover"]))
+    assert any("Mind the barometer." in text for text in texts(book["cautions and remarks"]))
 
 
 def test_numbers_are_numbers_shown_with_sensible_decimals(book: openpyxl.Workbook) -> None:

@@ -171,7 +171,12 @@ def test_every_list_of_words_is_stated() -> None:
         CHOICES
     ) | open_lists
     assert SHEETS["reported permeability"].column("gas").choices == ("nitrogen", "helium", "air")
-    assert SHEETS["certified values"].column("result").choices == tuple(RESULTS)
+    assert SHEETS["certified values"].column("result").choices == (
+        *tuple(RESULTS)[:13],
+        "oil saturation",
+        "water saturation",
+        "gas saturation",
+    )
 
 
 def test_either_or() -> None:
