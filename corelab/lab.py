@@ -487,6 +487,7 @@ class Lab:
         where: str = "",
         stress: float | None = None,
         with_uncertainty: bool = False,
+        uniaxial: float | None = None,
     ) -> pd.DataFrame:
         """The plugs of an interval and their results, one row a plug, units in the headings.
 
@@ -504,10 +505,13 @@ class Lab:
             A condition such as ``porosity > 0.12 and facies = 'channel sand'``.
         stress
             Net confining stress [MPa]; the lowest measured where None.
+        uniaxial
+            Poisson's ratio, where `stress` is a uniaxial stress of the reservoir: the hydrostatic stress of
+            the laboratory that compacts alike is taken (Teeuw 1971).
         with_uncertainty
             Add a column `u …` after each computed one.
         """
-        filters = select.Filters(top, base, depth, unit, where, stress, with_uncertainty)
+        filters = select.Filters(top, base, depth, unit, where, stress, with_uncertainty, uniaxial)
         with self._reading() as connection:
             return select.interval(connection, store.Identities.read(connection), well, filters)
 

@@ -44,7 +44,7 @@ def expanded(bench: Bench, kind: str, setup: str) -> tuple[Array, Texts, Mask]:
     for number in np.unique(chosen[chosen >= 0]):
         here = chosen == number
         calibration = bench.tray.calibration(int(number))
-        fitted = calibrated(bench.tray, calibration)
+        fitted = _fitted(bench, calibration)
         if isinstance(fitted, str):
             reason[here] = f"the calibration '{calibration.name}' cannot be used: {fitted}"
             continue
@@ -78,6 +78,21 @@ def expanded(bench: Bench, kind: str, setup: str) -> tuple[Array, Texts, Mask]:
         value = np.where(np.isnan(own), value, own)
     value = value if value.imag.any() else value.real
     return value, reason, moved
+
+
+def _fitted(bench: Bench, calibration: CalibrationRows) -> tuple[Any, Any, bool] | str:
+    """`calibrated`, found once for the passes in which nothing moves the calibration."""
+    tray = bench.tray
+    if tray.barometer_step or tray.temperature_step or any(calibration.offset):
+        return calibrated(tray, calibration)
+    kept = tray.found.setdefault("calibrations", {})
+    fitted: tuple[Any, Any, bool] | str
+    readings, fitted = kept.get(calibration.number, (None, ""))
+    if readings is not calibration.readings:
+        fitted = calibrated(tray, calibration)
+        if readings is None:
+            kept[calibration.number] = calibration.readings, fitted
+    return fitted
 
 
 def calibrated(tray: Tray, calibration: CalibrationRows) -> tuple[Any, Any, bool] | str:

@@ -178,6 +178,9 @@ def _steady_state(bench: Bench, shape: Shape, readings: Readings) -> tuple[list[
     apart = np.abs(row_mean.real - mean.real[step_of]) > SAME_PRESSURE * np.abs(mean.real[step_of])
     gas_k.flag("repeats of one step differ in pressure", any_by(apart & counted, step_of, steps))
     gas_k.flag(TEMPERATURE_ASSUMED, any_by(temperature_assumed & counted, step_of, steps))
+    gas_k.flag(
+        "biaxial stress", any_by((readings.texts["stress_type"] == "biaxial") & counted, step_of, steps)
+    )
     gas_k.flag(STRESS_NOT_STATED, any_by(unstated & counted, step_of, steps))
     gas_k.flag("confining pressure below the pore pressure", any_by((net < 0.0) & counted, step_of, steps))
 

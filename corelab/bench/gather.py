@@ -119,7 +119,13 @@ class Tray:
         return self.in_force[kind]
 
     def calibration(self, number: int) -> CalibrationRows:
-        return next(c for found in self.calibrations.values() for c in found if c.number == number)
+        by_number = self.found.get("by number")
+        if by_number is None or by_number[0] is not self.calibrations:
+            numbered = {c.number: c for found in self.calibrations.values() for c in found}
+            by_number = self.calibrations, numbered
+            self.found["by number"] = by_number
+        found: CalibrationRows = by_number[1][number]
+        return found
 
     def calibration_users(self) -> dict[int, set[int]]:
         """The calibrations in force for any reading, with the places of the plugs that rest on them."""
@@ -163,16 +169,16 @@ def _calibrations(rows: pd.DataFrame) -> dict[tuple[int, str], list[CalibrationR
     labels = [c or "" for c in rows["calibration"]]
     days = [(d or "")[:10] for d in rows["measured_on"]]
     together = [f"label {a.casefold()}" if a else f"day {d}" for a, d in zip(labels, days, strict=True)]
-    for _, group in rows.groupby(
+    together_by = rows.groupby(
         [rows["instrument_id"], rows["setup"], pd.Series(together, index=rows.index)], sort=True
-    ):
+    )
+    for number, (_, group) in enumerate(together_by):
         dates = [d for d in group["measured_on"] if d]
         label = next((c for c in group["calibration"] if c), "")
         date = max(dates) if dates else ""
         key = (int(group["instrument_id"].iloc[0]), str(group["setup"].iloc[0]))
         name = label or date or "undated"
         readings = Readings.of(group, np.zeros(len(group), dtype=np.intp))
-        number = sum(map(len, found.values()))
         found[key].append(CalibrationRows(*key, name, date, readings, number))
     return found
 

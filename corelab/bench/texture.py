@@ -21,7 +21,7 @@ def sieved(bench: Bench, porosity: Array) -> list[Outcome]:
         return []
     places, group = np.unique(readings.at, return_inverse=True)
     curves = texture.sieve_statistics(
-        readings.numbers["aperture_mm"].real, readings.numbers["mass_retained_g"].real, group
+        readings.numbers["aperture_mm"].real, readings.number("mass_retained_g"), group
     )
     at = places.astype(np.intp)
     median = 2.0**-curves.median_phi

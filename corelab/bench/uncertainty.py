@@ -43,6 +43,7 @@ _ROLE: Mapping[str, tuple[str, ...]] = {
     "gas permeability": (
         "direction", "step", "gas", "net_confining_stress_mpa", "confining_pressure_kpa", "measured_on",
     ),
+    "sieve": ("aperture_mm",),
     "reported permeability": ("direction", "net_confining_stress_mpa"),
     "liquid permeability": ("step", "net_confining_stress_mpa"),
 }  # fmt: skip

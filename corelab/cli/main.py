@@ -400,6 +400,12 @@ def interval(
     unit: DepthUnit = "",
     where: Where = "",
     stress: Stress = None,
+    uniaxial: Annotated[
+        float | None,
+        typer.Option(
+            metavar="POISSON", help="The stress is uniaxial; take the hydrostatic one that compacts alike."
+        ),
+    ] = None,
     with_uncertainty: Uncertain = False,
     form: Format = "",
     out: Out = None,
@@ -421,6 +427,7 @@ def interval(
             unit=unit,
             where=where,
             stress=stress,
+            uniaxial=uniaxial,
             with_uncertainty=with_uncertainty,
         )
     from corelab.formats import tables_out

@@ -150,6 +150,7 @@ READINGS: tuple[Reading, ...] = (
     *_read("retort", "", "retort water", "water volume"),
     *_read("retort", "", "retort oil", "oil volume"),
     *_read("retort", "", "volume", "gas volume"),
+    *_read("sieve", "", "mass", "mass retained"),
 )
 CALIBRATION_READINGS: tuple[Reading, ...] = (
     *_read("porosimeter calibration", "", "billet", "known volume"),

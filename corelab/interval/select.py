@@ -20,7 +20,7 @@ from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
 from corelab.interval import where as conditions
-from corelab.interval.stress import near, with_interpolated
+from corelab.interval.stress import equivalent_stress_mpa, near, with_interpolated
 from corelab.quantities import RESULTS
 from corelab.records import store
 from corelab.sheets.readings import DIRECTIONS, GASES
@@ -94,6 +94,7 @@ class Filters:
     where: str = ""
     stress_mpa: float | None = None
     with_uncertainty: bool = False
+    poisson_ratio: float | None = None  # the stress asked for is uniaxial; else hydrostatic
 
 
 def natural_key(name: str) -> tuple[Any, ...]:
@@ -165,7 +166,14 @@ def interval(
     unit = depth_unit(well_facts, stored, filters.unit)
     frame = _facts(connection, identities, number, well_facts, stored)
     _place(frame, filters.depth)
-    _add_results(frame, connection, stored, filters.stress_mpa)
+    stress_mpa = filters.stress_mpa
+    if filters.poisson_ratio is not None:
+        if stress_mpa is None:
+            raise Usage("A uniaxial stress needs its value: --stress MPA with --uniaxial POISSON.")
+        if not 0.0 <= filters.poisson_ratio < 0.5:
+            raise Usage(f"Poisson's ratio lies from 0 to below 0.5; found {filters.poisson_ratio:g}.")
+        stress_mpa = equivalent_stress_mpa(stress_mpa, filters.poisson_ratio)
+    _add_results(frame, connection, stored, stress_mpa)
     if unit != "m":
         metre, target = units.unit("m", "length"), units.unit(unit, "length")
         for column in DEPTH_COLUMNS:
