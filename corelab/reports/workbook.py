@@ -73,11 +73,13 @@ SERIES = (
     ("6A5340", "square"),
     ("7768AE", "diamond"),
 )
+#: Rows of the provenance that go on paper; hundreds of pages serve nobody.
+PRINTED_ROWS = 25
 LIKELY_CRUSHED = "percussion sidewall, crush likely"
 AT_A_LIMIT = "permeability at a limit"
 SET_SERIES = {
     "percussion sidewall": ("5A5A5A", "B3AEA2", "diamond"),
-    "rotary sidewall": ("5A5A5A", "B3AEA2", "square"),
+    "rotary sidewall": ("1F1F1F", "FFFFFF", "circle"),
     LIKELY_CRUSHED: ("A8321E", "E2765C", "diamond"),
     AT_A_LIMIT: ("5A5A5A", "E6CB4F", "triangle"),
 }
@@ -653,6 +655,8 @@ def _methods(sheet: Worksheet, report: WellReport) -> None:
 
 
 def _provenance(sheet: Worksheet, report: WellReport) -> None:
+    from openpyxl.utils import get_column_letter as letter
+
     _opening(sheet, report, "Provenance")
     frame = report.provenance
     if frame.empty:
@@ -666,9 +670,11 @@ def _provenance(sheet: Worksheet, report: WellReport) -> None:
         sheet,
         3,
         "The readings in force when this was written, each as it was entered, with the file, sheet and row "
-        "it came from.",
+        f"it came from. The sheet holds them all; of {len(frame)} rows the first {PRINTED_ROWS} print.",
         len(headings),
     )
+    last = min(after - 1, 5 + PRINTED_ROWS)
+    sheet.print_area = f"A1:{letter(len(headings))}{last}"
 
 
 def _cautions(sheet: Worksheet, report: WellReport) -> None:
