@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import TYPE_CHECKING
 
 from corelab.version import __version__
@@ -10,7 +11,7 @@ if TYPE_CHECKING:
     from corelab.lab import Lab
 
 
-def open_lab(database: str = "corelab.db", by: str = "") -> Lab:
+def open_lab(database: str = "corelab.db", by: str = "", password: str | Callable[[str], str] = "") -> Lab:
     """Open a laboratory's record: an SQLite file, or `postgresql+psycopg://…`.
 
     Parameters
@@ -19,10 +20,12 @@ def open_lab(database: str = "corelab.db", by: str = "") -> Lab:
         Path or URL; `setup` makes it where there is none.
     by
         The acting person; the login name where empty.
+    password
+        Where the acting person signs in with one: the password, or a function that asks for it by name.
     """
     from corelab.lab import Lab
 
-    return Lab(database, by)
+    return Lab(database, by, password)
 
 
 __all__ = ["__version__", "open_lab"]

@@ -66,7 +66,9 @@ def build(folder: Path, tell: Callable[[str], None], show: Callable[[str], None]
                 show(line)
         tell("4/4  writing what a partner would get")
         for well in wells:
-            out = lab.write_workbook(well, folder / f"{well} core results.xlsx")
+            out = folder / f"{well} core results.xlsx"
+            if report.changes or not out.exists():
+                lab.write_workbook(well, out)
             tell(f"     {out}")
     tell(f'Look further:  corelab --database "{database}" interval {wells[0]}')
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import getpass
+import tempfile
 from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -19,11 +20,15 @@ from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_y
 from corelab.interval import board, explain, life, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema, store
+from corelab.review import approve, issued, roles
+from corelab.review.issued import Issuing as _Issuing
 from corelab.sheets import SHEETS, STANDARDS_WELL
 from corelab.version import __version__
 
 if TYPE_CHECKING:
     import sqlalchemy as sa
+
+    from corelab.review.verify import Verified
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,13 +44,26 @@ class Setup:
         return not self.before
 
 
+@dataclass(frozen=True, slots=True)
+class Restored:
+    """What `restore` did: the backup's seal, how many events of the lab it lacked, where those are kept."""
+
+    seal: str
+    lost: int
+    kept: Path | None
+
+
 class Lab:
     """A laboratory's record. Made by `corelab.open_lab`."""
 
-    def __init__(self, database: str = "corelab.db", by: str = "") -> None:
+    def __init__(
+        self, database: str = "corelab.db", by: str = "", password: str | Callable[[str], str] = ""
+    ) -> None:
         self.database = database
         self.by = by
         self.engine = engines.make_engine(database)
+        self._password = password
+        self._signed_in: set[str] = set()
 
     def close(self) -> None:
         """Let go of the database."""
@@ -80,24 +98,60 @@ class Lab:
             yield connection
 
     @contextmanager
-    def _writing(self, *, keep: bool = True) -> Iterator[tuple[sa.Connection, str]]:
-        """A connection that changes the record, and the acting person; the changes may only be tried."""
+    def _writing(self, act: str, *, keep: bool = True) -> Iterator[tuple[sa.Connection, str]]:
+        """A connection that changes the record, and the acting person, who must be allowed to do so.
+
+        Parameters
+        ----------
+        act
+            What is done, by its name in `corelab.review.roles.MAY`.
+        keep
+            Whether the changes stay; else they are only tried.
+        """
         self._require_file()
+        self._sign_in()
         with engines.writing(self.engine, keep=keep) as connection:
             migrate.require_current(connection)
-            yield connection, self._acting(connection)
+            yield connection, self._acting(connection, act)
 
-    def _acting(self, connection: sa.Connection) -> str:
-        """The acting person: registered, once anybody is."""
-        name = self.by or _login()
+    def _acting(self, connection: sa.Connection, act: str = "") -> str:
+        """The acting person: registered, once anybody is, and allowed to do what is asked."""
         known = store.persons(connection)
-        if known and store.name_key(name) not in known:
-            names = [shown for _, shown, _ in known.values()]
+        if not known:
+            return self.by or _login()
+        number, name, role = self._registered(known)
+        if act:
+            secret = store.secrets(connection).get(number)
+            if secret is not None and secret not in self._signed_in:
+                raise Unavailable(f"The password of {name} was set a moment ago: try again.")
+            roles.require(act, name, role)
+        return name
+
+    def _registered(self, known: Mapping[str, tuple[int, str, str]]) -> tuple[int, str, str]:
+        name = self.by or _login()
+        found = known.get(store.name_key(name))
+        if found is None or found[2] == schema.LEFT:
+            names = [shown for _, shown, role in known.values() if role != schema.LEFT]
+            state = "has left this lab" if found else "is not registered in this lab"
             raise NotFound(
-                f"{quoted(name)} is not registered in this lab; {did_you_mean(name, names)} "
+                f"{quoted(name)} {state}; {did_you_mean(name, names)} "
                 "Say who you are with --by or CORELAB_BY."
             )
-        return known[store.name_key(name)][1] if known else name
+        return found
+
+    def _sign_in(self) -> None:
+        """Check the acting person's password, if there is one, before the record is locked for writing."""
+        with self._reading() as connection:
+            known, secrets = store.persons(connection), store.secrets(connection)
+        if not known:
+            return
+        number, name, _ = self._registered(known)
+        secret = secrets.get(number)
+        if secret is None or secret in self._signed_in:
+            return
+        given = self._password(name) if callable(self._password) else self._password
+        roles.check_password(name, secret, given)
+        self._signed_in.add(secret)
 
     def _close(
         self,
@@ -113,19 +167,36 @@ class Lab:
 
     # -- the lab itself -----------------------------------------------------------------------------------
 
-    def setup(self) -> Setup:
-        """Make the database, or bring it to the newest schema."""
+    def setup(self, manager: str = "") -> Setup:
+        """Make the database, or bring it to the newest schema.
+
+        Parameters
+        ----------
+        manager
+            Registered as the first person, in a lab that has nobody registered.
+        """
         file = self._file()
         if file is not None and not file.absolute().parent.is_dir():
             raise NotFound(f"There is no folder {file.absolute().parent}: make it first.")
         before, after, backup = migrate.upgrade(self.engine)
+        shown = " ".join(manager.split())
         with engines.writing(self.engine) as connection:
             identities = store.Identities.read(connection)
+            change = store.Change.begin(connection)
+            detail: dict[str, object] = {"schema": after}
             if identities.find("well", STANDARDS_WELL) is None:
-                change = store.Change.begin(connection)
                 identities.add("well", STANDARDS_WELL)
                 change.identities(identities)
-                self._close(change, self.by or _login(), "setup", {"schema": after})
+            elif before != after:
+                detail["schema before"] = before
+            elif not shown:
+                return Setup(before, after, backup)
+            if shown:
+                if store.persons(connection):
+                    raise Usage("People are registered already: 'corelab person add' registers others.")
+                self._add_person(change, shown, "manager", {})
+                detail["manager"] = shown
+            self._close(change, shown or self.by or _login(), "setup", detail)
         return Setup(before, after, backup)
 
     def seal(self) -> str:
@@ -155,7 +226,7 @@ class Lab:
     def _set(self, name: str, value: str) -> None:
         setting = lab_settings.setting_named(name)
         text = lab_settings.checked(name, value)
-        with self._writing() as (connection, person):
+        with self._writing("change settings") as (connection, person):
             stored = store.settings(connection)
             if stored.get(setting.name) == text:
                 return
@@ -172,30 +243,78 @@ class Lab:
         """Register a person, or give a registered one another role."""
         if role not in schema.ROLES:
             raise Usage(f"A role is one of: {', '.join(schema.ROLES)}; found {quoted(role)}.")
+        self._set_role(name, role, "person add")
+
+    def person_leave(self, name: str) -> None:
+        """Note that a person has left: what they did stays, and they may do nothing more."""
+        self._set_role(name, schema.LEFT, "person leave")
+
+    def _set_role(self, name: str, role: str, command: str) -> None:
         shown = " ".join(name.split())
         if not shown:
             raise Usage("A person needs a name.")
-        with self._writing() as (connection, acting):
+        with self._writing("register people") as (connection, acting):
             known = store.persons(connection)
             if not known and role != "manager":
                 raise Usage("The first person registered must be a manager, who registers the others.")
-            if known and known[store.name_key(acting)][2] != "manager":
-                raise Refused(
-                    [Problem(f"the role of {acting}", "a manager", "ask a manager to register people")],
-                    "Nothing was written: only a manager registers people.",
-                )
-            change = store.Change.begin(connection)
             key = store.name_key(shown)
-            if key in known:
-                number = known[key][0]
-                if known[key][2] == role:
-                    raise Usage(f"{known[key][1]} is registered as {role} already.")
-            else:
-                number = store.next_id(connection, schema.person)
-                change.rows(schema.person, [{"id": number, "name": shown, "name_key": key}])
-            fact = {"id": store.next_id(connection, schema.person_role), "person_id": number, "role": role}
-            change.rows(schema.person_role, [fact])
-            self._close(change, acting, "person add", {"name": shown, "role": role})
+            if role == schema.LEFT and key not in known:
+                names = [n for _, n, r in known.values() if r != schema.LEFT]
+                raise NotFound(f"{quoted(shown)} is not registered; {did_you_mean(shown, names)}")
+            if key in known and known[key][2] == role:
+                state = "has left already" if role == schema.LEFT else f"is registered as {role} already"
+                raise Usage(f"{known[key][1]} {state}.")
+            managers = [k for k, (_, _, r) in known.items() if r == "manager"]
+            if managers == [key]:
+                raise Usage(f"{known[key][1]} is the only manager: make somebody else a manager first.")
+            change = store.Change.begin(connection)
+            self._add_person(change, shown, role, known)
+            self._close(change, acting, command, {"name": shown, "role": role})
+
+    def _add_person(
+        self, change: store.Change, shown: str, role: str, known: Mapping[str, tuple[int, str, str]]
+    ) -> None:
+        key = store.name_key(shown)
+        if key in known:
+            number = known[key][0]
+        else:
+            number = store.next_id(change.connection, schema.person)
+            change.rows(schema.person, [{"id": number, "name": shown, "name_key": key}])
+        fact = {
+            "id": store.next_id(change.connection, schema.person_role),
+            "person_id": number,
+            "role": role,
+        }
+        change.rows(schema.person_role, [fact])
+
+    def person_password(self, name: str, password: str) -> None:
+        """Set a person's password; whoever has one gives it at every change of the record."""
+        with self._reading() as connection:
+            own = store.name_key(name) == store.name_key(self._acting(connection))
+        secret = roles.secret_of(password)
+        act = "set one's own password" if own else "set another's password"
+        with self._writing(act) as (connection, acting):
+            known = store.persons(connection)
+            found = known.get(store.name_key(name))
+            if found is None:
+                names = [n for _, n, _ in known.values()]
+                raise NotFound(f"{quoted(name)} is not registered; {did_you_mean(name, names)}")
+            change = store.Change.begin(connection)
+            number = store.next_id(connection, schema.credential)
+            change.rows(schema.credential, [{"id": number, "person_id": found[0], "secret": secret}])
+            self._close(change, acting, "person password", {"name": found[1]})
+        if own:
+            self._signed_in.add(secret)
+
+    def person_list(self) -> pd.DataFrame:
+        """Who is registered, in which role, and whether they sign in with a password."""
+        with self._reading() as connection:
+            known, secrets = store.persons(connection), store.secrets(connection)
+        rows = [
+            {"person": name, "role": role, "password": "set" if number in secrets else "not set"}
+            for number, name, role in known.values()
+        ]
+        return pd.DataFrame(rows, columns=["person", "role", "password"])
 
     # -- bench sheets -------------------------------------------------------------------------------------
 
@@ -243,7 +362,9 @@ class Lab:
         rows, wrong, report.notices = loading.read_rows(files, decimal_comma=decimal_comma)
         problems += wrong
         say(f"checking {len(rows)} rows")
-        with self._writing(keep=not check) as (connection, person):
+        described = bool(rows) and {row.sheet.kind for row in rows} <= roles.DESCRIBED
+        act = "load descriptions and crush verdicts" if described else "load bench sheets"
+        with self._writing(act, keep=not check) as (connection, person):
             planned, identities, stored = self._planned(connection, rows, problems, report, reason)
             if not planned.new and not identities.added:
                 return report
@@ -289,7 +410,7 @@ class Lab:
         """Take an entry out of force; its results are computed anew without it."""
         if not reason.strip():
             raise Usage("A withdrawal needs a reason: --reason TEXT.")
-        with self._writing() as (connection, person):
+        with self._writing("withdraw readings") as (connection, person):
             row = store.entry_row(connection, number)
             if row is None or row["kind"] == schema.WITHDRAWAL:
                 raise NotFound(
@@ -439,7 +560,14 @@ class Lab:
         }
 
     def explain(
-        self, well: str, plug: str, result: str, *, stress: float | None = None, direction: str = ""
+        self,
+        well: str,
+        plug: str,
+        result: str,
+        *,
+        stress: float | None = None,
+        direction: str = "",
+        approved: bool = False,
     ) -> dict[str, Any]:
         """How a result came about: formulas with numbers, readings as typed, instruments, budget.
 
@@ -449,9 +577,20 @@ class Lab:
             Its name, such as `porosity` or `klinkenberg permeability`.
         stress, direction
             Which one, where there are several; the lowest stress measured where not said.
+        approved
+            As it was approved, from the readings that were in force then.
         """
         with self._reading() as connection:
             identities = store.Identities.read(connection)
+            if approved:
+                number = select.plug_id(identities, well, plug)
+                newest = store.approvals(connection, [number])
+                if not len(newest) or newest["verdict"].iloc[0] != "approved":
+                    raise NotFound(f"Plug {quoted(plug)} of {well} is not approved.")
+                with store.as_of(connection, int(newest["event"].iloc[0])):
+                    return explain.explain(
+                        connection, identities, well, plug, result, stress_mpa=stress, direction=direction
+                    )
             return explain.explain(
                 connection, identities, well, plug, result, stress_mpa=stress, direction=direction
             )
@@ -511,7 +650,10 @@ class Lab:
         with_uncertainty
             Add a column `u …` after each computed one.
         """
-        filters = select.Filters(top, base, depth, unit, where, stress, with_uncertainty, uniaxial)
+        filters = _filters(
+            top, base, depth=depth, unit=unit, where=where, stress=stress,
+            with_uncertainty=with_uncertainty, uniaxial=uniaxial,
+        )  # fmt: skip
         with self._reading() as connection:
             return select.interval(connection, store.Identities.read(connection), well, filters)
 
@@ -528,7 +670,7 @@ class Lab:
     def recompute(self, *, check: bool = False) -> pd.DataFrame:
         """Compute all results anew; returns those that differ from what is stored (none, it is hoped)."""
         columns = ["well", "plug", "quantity", "direction", "stress [MPa]", "step", "difference"]
-        context = self._reading() if check else self._writing()
+        context = self._reading() if check else self._writing("recompute results")
         with context as opened:
             connection = opened if check else opened[0]  # type: ignore[index]
             identities = store.Identities.read(connection)  # type: ignore[arg-type]
@@ -554,35 +696,298 @@ class Lab:
 
     # -- what leaves the lab ------------------------------------------------------------------------------
 
-    def write_workbook(self, well: str, out: str | Path, *, recipient: str = "", unit: str = "") -> Path:
+    def write_workbook(
+        self, well: str, out: str | Path, *, recipient: str = "", unit: str = "", reason: str = ""
+    ) -> Path:
         """Write the workbook of a well that a partner receives."""
         from corelab.reports.well import report
         from corelab.reports.workbook import write_workbook
 
-        _refuse_standards(well)
-        with self._reading() as connection:
-            identities = store.Identities.read(connection)
-            person = self._acting(connection)
+        def make(at: _Issuing, part: Path) -> pd.DataFrame:
             filters = select.Filters(unit=unit)
-            made = report(connection, identities, well, person=person, recipient=recipient, filters=filters)
-        write_workbook(Path(out), made)
-        return Path(out)
+            made = report(
+                at.connection, at.identities, well, person=at.person, recipient=recipient,
+                filters=filters, issue=at.words,
+            )  # fmt: skip
+            write_workbook(part, made)
+            return made.results
 
-    def write_csv(self, well: str, out: str | Path, **filters: Any) -> Path:
+        return self._issue("workbook", well, Path(out), make, {"unit": unit}, recipient, reason)
+
+    def write_csv(
+        self, well: str, out: str | Path, *, recipient: str = "", reason: str = "", **filters: Any
+    ) -> Path:
         """Write the interval of a well as CSV, UTF-8 with a mark."""
         from corelab.formats.tables_out import write_csv
 
-        _refuse_standards(well)
-        write_csv(Path(out), self.interval(well, **filters))
-        return Path(out)
+        return self._issue_table("csv", write_csv, well, Path(out), filters, recipient, reason)
 
-    def write_parquet(self, well: str, out: str | Path, **filters: Any) -> Path:
+    def write_parquet(
+        self, well: str, out: str | Path, *, recipient: str = "", reason: str = "", **filters: Any
+    ) -> Path:
         """Write the interval of a well as Parquet."""
         from corelab.formats.tables_out import write_parquet
 
+        return self._issue_table("parquet", write_parquet, well, Path(out), filters, recipient, reason)
+
+    def _issue_table(
+        self,
+        kind: str,
+        write: Callable[[Path, pd.DataFrame], None],
+        well: str,
+        out: Path,
+        filters: dict[str, Any],
+        recipient: str,
+        reason: str,
+    ) -> Path:
+        def make(at: _Issuing, part: Path) -> pd.DataFrame:
+            frame = select.interval(at.connection, at.identities, well, _filters(**filters))
+            write(part, frame)
+            return frame
+
+        return self._issue(kind, well, out, make, filters, recipient, reason)
+
+    def _issue(
+        self,
+        kind: str,
+        well: str,
+        out: Path,
+        make: Callable[[_Issuing, Path], pd.DataFrame],
+        request: Mapping[str, Any],
+        recipient: str,
+        reason: str,
+    ) -> Path:
+        """Write a file and keep it, byte for byte, with what it showed; nothing is issued unrecorded."""
+        from corelab.formats.tables_out import write_bytes
+
         _refuse_standards(well)
-        write_parquet(Path(out), self.interval(well, **filters))
+        act = "issue files to a partner" if recipient else "write files"
+        with self._writing(act) as (connection, person):
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well)
+            at = issued.begin(connection, identities, number, kind, recipient, person)
+            with tempfile.TemporaryDirectory(prefix="corelab-") as folder:
+                part = Path(folder) / f"part{out.suffix}"
+                shown = make(at, part)
+                content = part.read_bytes()
+            change = store.Change.begin(connection)
+            issued.keep(change, at, out.name, content, shown, request)
+            detail: dict[str, object] = {
+                "file": out.name,
+                "kind": kind,
+                "well": identities.name("well", number),
+            }
+            detail |= {"export": at.number, "issue": at.issue} | ({"for": recipient} if recipient else {})
+            self._close(change, person, f"write {kind}", detail, reason.strip())
+            write_bytes(out, content)
+        return out
+
+    def export_list(self, well: str = "") -> pd.DataFrame:
+        """The files that were issued, of all wells or of one."""
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well) if well else None
+            return issued.listed(connection, identities, number)
+
+    def export_again(self, number: int, out: str | Path) -> Path:
+        """Write a file that was issued again, byte for byte."""
+        from corelab.formats.tables_out import write_bytes
+
+        with self._reading() as connection:
+            row = store.export_row(connection, number)
+        if row is None:
+            raise NotFound(f"There is no export {number}; 'corelab export list' shows those there are.")
+        write_bytes(Path(out), row["content"])
         return Path(out)
+
+    def export_check(self, file: str | Path) -> pd.DataFrame:
+        """The exports to which a file is equal, byte for byte; none where it was altered or is not ours."""
+        path = Path(file)
+        try:
+            content = path.read_bytes()
+        except OSError as trouble:
+            raise NotFound(f"{path} cannot be read ({trouble.strerror}).") from trouble
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            return issued.listed(connection, identities, None, content)
+
+    # -- review -------------------------------------------------------------------------------------------
+
+    def review(self, well: str, *, unit: str = "") -> pd.DataFrame:
+        """What waits for review in a well, with what is odd about it first."""
+        from corelab.review.waiting import waiting
+
+        _refuse_standards(well)
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well)
+            blocked = self._blocked(connection, identities, select.plugs_of_well(identities, number))
+            return waiting(connection, identities, well, blocked, unit)
+
+    def approve(self, well: str, plugs: Sequence[str], reason: str, *, everything: bool = False) -> int:
+        """Approve the results of plugs: they are frozen as they are; returns how many results.
+
+        Parameters
+        ----------
+        everything
+            All that waits in the well, in the place of named plugs.
+        """
+        _require_reason(reason, "An approval")
+        with self._writing("approve results") as (connection, person):
+            if not store.persons(connection):
+                raise Usage(
+                    "Nobody is registered in this lab, and an approval is a person's: register a manager and "
+                    "a reviewer first ('corelab person add NAME --role manager')."
+                )
+            identities, ids = self._named_plugs(connection, well, plugs, everything)
+            change = store.Change.begin(connection)
+            count = approve.approve(
+                change, identities, ids, person, self._blocked(connection, identities, ids)
+            )
+            detail = {"well": well, "plugs": [identities.name("plug", p) for p in ids], "results": count}
+            self._close(change, person, "approve", detail, reason.strip())
+        return count
+
+    def revoke(self, well: str, plugs: Sequence[str], reason: str) -> None:
+        """Take back the approval of plugs."""
+        _require_reason(reason, "Revoking an approval")
+        with self._writing("revoke approvals") as (connection, person):
+            identities, ids = self._named_plugs(connection, well, plugs, False)
+            change = store.Change.begin(connection)
+            approve.revoke(change, identities, ids)
+            detail = {"well": well, "plugs": [identities.name("plug", p) for p in ids]}
+            self._close(change, person, "revoke", detail, reason.strip())
+
+    def release(self, well: str, plugs: Sequence[str], reason: str) -> None:
+        """Let results stand that control blocks; the reason travels with them."""
+        _require_reason(reason, "A release")
+        with self._writing("release what control blocks") as (connection, person):
+            identities, ids = self._named_plugs(connection, well, plugs, False)
+            change = store.Change.begin(connection)
+            approve.release(change, identities, ids, self._blocked(connection, identities, ids))
+            detail = {"well": well, "plugs": [identities.name("plug", p) for p in ids]}
+            self._close(change, person, "release", detail, reason.strip())
+
+    def _named_plugs(
+        self, connection: sa.Connection, well: str, plugs: Sequence[str], everything: bool
+    ) -> tuple[store.Identities, list[int]]:
+        _refuse_standards(well)
+        identities = store.Identities.read(connection)
+        if everything:
+            frame = select.interval(connection, identities, well, select.Filters())
+            plugs = frame.loc[frame["status"] != "approved", "plug"].tolist()
+            number = select.well_id(identities, well)
+            ids = [identities.ids["plug"][number, store.name_key(p)] for p in plugs]
+            results = store.results(connection, ids)
+            there = set(results.loc[results["value"].notna(), "plug_id"])
+            ids = [p for p in ids if p in there]
+            if not ids:
+                raise NotFound(f"Nothing waits for review in {well}.")
+            return identities, ids
+        if not plugs:
+            raise Usage("Name the plugs.")
+        return identities, list(dict.fromkeys(select.plug_id(identities, well, plug) for plug in plugs))
+
+    def _blocked(
+        self, connection: sa.Connection, identities: store.Identities, plug_ids: Sequence[int]
+    ) -> dict[int, str]:
+        """By plug, what control says against its results."""
+        return {}
+
+    # -- trust --------------------------------------------------------------------------------------------
+
+    def verify(self, seal: str = "") -> Verified:
+        """Prove that nothing was altered behind the program's back; with a seal, since it was taken."""
+        from corelab.review.verify import verify
+
+        with self._reading() as connection:
+            return verify(connection, seal)
+
+    def backup(self, file: str | Path) -> str:
+        """Copy the lab into a file while it is in use; returns the seal of the copy."""
+        from corelab.records.backup import write_backup
+
+        target = Path(file)
+        if target.exists():
+            raise Usage(f"{target} is there already: name another file, or remove it first.")
+        if not target.absolute().parent.is_dir():
+            raise Unavailable(f"There is no folder {target.absolute().parent}: make it first.")
+        with self._writing("back up", keep=False):
+            pass  # who may not back up is refused before anything is copied
+        seal = write_backup(self.engine, target)
+        with self._writing("back up") as (connection, person):
+            change = store.Change.begin(connection)
+            self._close(change, person, "backup", {"file": target.name, "seal": seal})
+        return seal
+
+    def restore(self, file: str | Path, *, over_newer: bool = False) -> Restored:
+        """Bring back a lab from a backup.
+
+        Raises
+        ------
+        Refused
+            If the lab here holds what the backup does not, unless that is said to be meant.
+        """
+        from corelab.records import backup
+
+        path = Path(file)
+        target = self._file()
+        if target is not None and target.exists() and target.resolve() == path.resolve():
+            raise Usage("The backup and the lab are the same file.")
+        with backup.readable_copy(path) as copy:
+            lost = self._lost_by_restoring(copy, target, over_newer)
+            with Lab(str(copy), self.by, self._password) as from_backup:
+                seal = from_backup.seal()
+                if lost is None:
+                    with from_backup._writing("restore", keep=False):
+                        pass
+            kept = None
+            if target is not None:
+                kept = backup.replace_file(copy, target)
+                migrate.upgrade(self.engine)
+            else:
+                backup.fill_server(copy, self.engine)
+        with engines.writing(self.engine) as connection:
+            found = history.last_seal(connection)
+            if found != seal:
+                raise Unavailable(f"what was restored has the seal {found}, the backup {seal}: try again.")
+            known = store.persons(connection)
+            person = known.get(store.name_key(self.by or _login()), (0, self.by or _login(), ""))[1]
+            change = store.Change.begin(connection)
+            detail = {"file": path.name, "seal": seal, "events not in it": lost or 0}
+            self._close(change, person, "restore", detail)
+        return Restored(seal, lost or 0, kept)
+
+    def _lost_by_restoring(self, copy: Path, target: Path | None, over_newer: bool) -> int | None:
+        """How much of the lab here a backup lacks; None where there is no lab here."""
+        from corelab.records import backup
+
+        if target is None or not target.exists() or not target.stat().st_size:
+            return None
+        try:
+            with engines.reading(self.engine) as connection:
+                if not migrate.schema_version(connection):
+                    return None
+                lost = backup.lost_by_restoring(connection, copy)
+        except Unavailable:
+            if not over_newer:
+                raise
+            return None
+        if lost and not over_newer:
+            raise Refused(
+                [
+                    Problem(
+                        f"{lost} events in {target} that the backup does not hold",
+                        "a lab that is no newer than the backup",
+                        "look at 'corelab history'; restore with --over-newer if they may go: the lab as it "
+                        "is now is kept beside it",
+                    )
+                ],
+                "Nothing was restored: the lab is newer than the backup.",
+            )
+        with self._writing("restore", keep=False):
+            pass
+        return lost
 
 
 def methods(key: str = "") -> list[dict[str, str]]:
@@ -595,6 +1000,35 @@ def methods(key: str = "") -> list[dict[str, str]]:
         raise NotFound(f"There is no method {quoted(key)}; {did_you_mean(key, list(known))}")
     chosen: Collection[str] = [key] if key else known
     return [described(known[k]) for k in chosen]
+
+
+def role_table() -> pd.DataFrame:
+    """What each role may do."""
+    return pd.DataFrame(
+        [
+            {"act": act, **{role: "may" if role in allowed else "" for role in schema.ROLES}}
+            for act, allowed in roles.MAY.items()
+        ]
+    )
+
+
+def _filters(
+    top: float | None = None,
+    base: float | None = None,
+    *,
+    depth: str = "",
+    unit: str = "",
+    where: str = "",
+    stress: float | None = None,
+    with_uncertainty: bool = False,
+    uniaxial: float | None = None,
+) -> select.Filters:
+    return select.Filters(top, base, depth, unit, where, stress, with_uncertainty, uniaxial)
+
+
+def _require_reason(reason: str, what: str) -> None:
+    if not reason.strip():
+        raise Usage(f"{what} needs a reason: --reason TEXT.")
 
 
 def _refuse_standards(well: str) -> None:

@@ -77,12 +77,17 @@ _ASKING = (
 )
 
 
+def asks_for_a_look(flag: str) -> bool:
+    """Whether a flag asks for a second look at the readings."""
+    return any(words in flag for words in _ASKING)
+
+
 def doubtful(rows: Collection[Mapping[str, Any]]) -> list[tuple[int, str]]:
     """The plugs, by number, of which a result asks for a second look at the readings, and why."""
     found: dict[tuple[int, str], None] = {}
     for row in rows:
         for flag in row["flags"].split("; ") if row["flags"] else ():
-            if any(words in flag for words in _ASKING):
+            if asks_for_a_look(flag):
                 shown = f" ({row['quantity']} {row['value']:.4g})" if row["quantity"] in flag else ""
                 found[row["plug_id"], flag + shown] = None
     return list(found)

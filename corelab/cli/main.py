@@ -40,7 +40,13 @@ app.add_typer(sheet_app, name="sheet")
 app.add_typer(well_app, name="well")
 app.add_typer(plug_app, name="plug")
 app.add_typer(person_app, name="person")
+export_app = typer.Typer(
+    no_args_is_help=True,
+    rich_markup_mode=None,
+    help="Files that were issued: listed, written again, checked.",
+)
 app.add_typer(write_app, name="write")
+app.add_typer(export_app, name="export")
 
 _DECIMALS = {
     "depth [m]": 2, "log depth [m]": 2, "depth [ft]": 2, "log depth [ft]": 2,
@@ -87,6 +93,7 @@ Out = Annotated[
     Path | None, typer.Option("--out", metavar="FILE", help="Write to a file instead of the terminal.")
 ]
 OutFile = Annotated[Path, typer.Option("--out", metavar="FILE", help="File to write.")]
+Partner = Annotated[str, typer.Option("--for", metavar="PARTNER", help="Whom it is for.")]
 Reason = Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why; kept in the history.")]
 
 
@@ -98,7 +105,15 @@ class _State:
 def _lab() -> Lab:
     from corelab.lab import Lab
 
-    return Lab(_State.database, _State.by)
+    return Lab(_State.database, _State.by, _password)
+
+
+def _password(person: str) -> str:
+    """The acting person's password: from the environment, else typed where there is somebody to type."""
+    given = os.environ.get("CORELAB_PASSWORD", "")
+    if given or not sys.stdin.isatty():
+        return given
+    return str(typer.prompt(f"Password of {person}", hide_input=True, err=True))
 
 
 def _one_of(option: str, value: str, *allowed: str) -> str:
@@ -152,10 +167,14 @@ def _options(
 
 
 @app.command()
-def setup() -> None:
+def setup(
+    manager: Annotated[
+        str, typer.Option(metavar="NAME", help="Register the first person, a manager who registers others.")
+    ] = "",
+) -> None:
     """Make the database, or bring it to the newest schema."""
     with _lab() as lab:
-        done = lab.setup()
+        done = lab.setup(manager)
         if done.made:
             show.tell(f"Made a new lab in {_State.database} (schema {done.after}).")
         elif done.before != done.after:
@@ -343,12 +362,15 @@ def plug_explain(
     direction: Annotated[
         str, typer.Option(metavar="axial|max|90|vertical", help="Which direction of flow.")
     ] = "",
+    approved: Annotated[
+        bool, typer.Option("--approved", help="As it was approved, from the readings in force then.")
+    ] = False,
     form: TableOrJson = "table",
 ) -> None:
     """How a result came about, from the entered readings to the number with its uncertainty."""
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
-        found = lab.explain(well, plug, result, stress=stress, direction=direction)
+        found = lab.explain(well, plug, result, stress=stress, direction=direction, approved=approved)
     if form == "json":
         show.print_json([found])
     else:
@@ -368,6 +390,187 @@ def person_add(
     with _lab() as lab:
         lab.person_add(name, role)
     show.tell(f"Registered {' '.join(name.split())} as {role}.")
+
+
+@person_app.command("list")
+def person_list(form: TableOrJson = "table") -> None:
+    """Who is registered, in which role, and whether they sign in with a password."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.person_list()
+    _show(frame, form)
+
+
+@person_app.command("roles")
+def person_roles(form: TableOrJson = "table") -> None:
+    """What each role may do."""
+    from corelab.lab import role_table
+
+    _one_of("--format", form, "table", "json")
+    _show(role_table(), form)
+
+
+@person_app.command("leave")
+def person_leave(name: Annotated[str, typer.Argument(metavar="NAME", help="The person's name.")]) -> None:
+    """Note that a person has left: what they did stays, and they may do nothing more."""
+    with _lab() as lab:
+        lab.person_leave(name)
+    show.tell(f"{' '.join(name.split())} may do nothing more here.")
+
+
+@person_app.command("password")
+def person_password(
+    name: Annotated[str, typer.Argument(metavar="NAME", help="The person's name.")],
+) -> None:
+    """Set a person's password (typed twice, or the one line on standard input)."""
+    if sys.stdin.isatty():
+        new = str(typer.prompt("New password", hide_input=True, confirmation_prompt=True, err=True))
+    else:
+        new = sys.stdin.readline().rstrip("\r\n")
+    with _lab() as lab:
+        lab.person_password(name, new)
+    show.tell(f"{' '.join(name.split())} now signs in with a password at every change of the record.")
+
+
+@app.command()
+def review(well: Well, unit: DepthUnit = "", form: TableOrJson = "table") -> None:
+    """What waits for review, with what is odd about it first."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.review(well, unit=unit)
+    if form == "json":
+        show.print_json(show.json_records(frame, ("odd", "blocked", "measured by")))
+    elif len(frame):
+        marks, notes = show.numbered(frame["odd"].tolist())
+        shown = frame.drop(columns=["blocked", "oddities"]).assign(odd=marks)
+        show.print_table(shown, _DECIMALS)
+        typer.echo("\n".join(["", "odd:", *notes] if notes else []))
+    show.tell(f"{len(frame)} plug{'' if len(frame) == 1 else 's'} of {well} wait for review.")
+
+
+Plugs = Annotated[list[str] | None, typer.Argument(metavar="PLUG…", help="Names of the plugs.")]
+
+
+@app.command()
+def approve(
+    well: Well,
+    plugs: Plugs = None,
+    reason: Reason = "",
+    everything: Annotated[bool, typer.Option("--all", help="All that waits in the well.")] = False,
+) -> None:
+    """Approve results: they are frozen as they are now."""
+    if everything and plugs:
+        raise Usage("Name plugs, or say --all; not both.")
+    with _lab() as lab:
+        count = lab.approve(well, plugs or [], reason, everything=everything)
+    show.tell(f"Approved {count} results; later corrections will wait for review beside them.")
+
+
+@app.command()
+def revoke(well: Well, plugs: Plugs = None, reason: Reason = "") -> None:
+    """Take back the approval of plugs: their results are shown as computed again."""
+    with _lab() as lab:
+        lab.revoke(well, plugs or [], reason)
+    show.tell("Revoked; what was approved stays in the history.")
+
+
+@app.command()
+def release(well: Well, plugs: Plugs = None, reason: Reason = "") -> None:
+    """Let results stand that control blocks; the reason travels with them."""
+    with _lab() as lab:
+        lab.release(well, plugs or [], reason)
+    show.tell("Released; the reason stands with the results.")
+
+
+@app.command()
+def verify(
+    seal: Annotated[str, typer.Option(metavar="VALUE", help="A seal kept from before.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """Prove that nothing was altered behind the program's back."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.verify(seal)
+    if form == "json":
+        show.print_json(
+            [
+                {
+                    "seal": found.seal,
+                    "events": found.events,
+                    "rows": found.rows,
+                    "results": found.results,
+                    "faults": found.faults,
+                }
+            ]
+        )
+    else:
+        for fault in found.faults:
+            typer.echo(f"  {fault}")
+        typer.echo(f"Seal {found.seal}")
+    counted = f"{found.events} events, {found.rows} rows, {found.results} results"
+    if found.faults:
+        show.tell(f"{len(found.faults)} faults in {counted}: keep this file as it is, and restore a backup.")
+        raise typer.Exit(1)
+    since = " The record still holds what was sealed then." if seal else ""
+    show.tell(f"Nothing was altered: {counted}.{since}")
+
+
+@app.command()
+def backup(file: Annotated[Path, typer.Argument(metavar="FILE", help="File to write.")]) -> None:
+    """Copy the lab into one file while it is in use, and check the copy."""
+    with _lab() as lab:
+        seal = lab.backup(file)
+    show.tell(f"Wrote {file}; keep it on another disk. Seal {seal}")
+
+
+@app.command()
+def restore(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="A file written by 'corelab backup'.")],
+    over_newer: Annotated[
+        bool, typer.Option("--over-newer", help="The lab here holds what the backup lacks, and it may go.")
+    ] = False,
+) -> None:
+    """Bring back a lab from a backup, and check it by its seal."""
+    with _lab() as lab:
+        done = lab.restore(file, over_newer=over_newer)
+    show.tell(f"Restored {_State.database}. Seal of the backup {done.seal}")
+    if done.kept:
+        show.tell(f"The lab as it was before is kept in {done.kept}.")
+
+
+@export_app.command("list")
+def export_list(
+    well: Annotated[str, typer.Argument(metavar="[WELL]", help="Only this well.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """The files that were issued: when, by whom, for whom."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.export_list(well)
+    _show(frame.drop(columns="sha256") if form == "table" else frame, form, wrap="reason")
+
+
+@export_app.command("again")
+def export_again(
+    number: Annotated[int, typer.Argument(metavar="NUMBER", help="Number from 'export list'.")], out: OutFile
+) -> None:
+    """Write a file that was issued again, byte for byte."""
+    with _lab() as lab:
+        lab.export_again(number, out)
+    show.tell(f"Wrote {out}, the same as was issued.")
+
+
+@export_app.command("check")
+def export_check(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="A file that somebody received.")],
+) -> None:
+    """Tell whether a file is what was issued, unaltered."""
+    with _lab() as lab:
+        frame = lab.export_check(file)
+    if not len(frame):
+        show.tell(f"{file} is not, byte for byte, a file that this lab issued.")
+        raise typer.Exit(1)
+    _show(frame.drop(columns=["sha256"]), "table")
 
 
 @app.command()
@@ -527,29 +730,44 @@ def methods(
 def write_workbook(
     well: Well,
     out: OutFile,
-    partner: Annotated[str, typer.Option("--for", metavar="PARTNER", help="Whom it is for.")] = "",
+    partner: Partner = "",
     unit: DepthUnit = "",
+    reason: Reason = "",
 ) -> None:
     """Write the workbook of a well that a partner receives."""
     with _lab() as lab:
-        lab.write_workbook(well, out, recipient=partner, unit=unit)
+        lab.write_workbook(well, out, recipient=partner, unit=unit, reason=reason)
     show.tell(f"Wrote {out}.")
 
 
 @write_app.command("csv")
-def write_csv(well: Well, out: OutFile, unit: DepthUnit = "", where: Where = "") -> None:
+def write_csv(
+    well: Well,
+    out: OutFile,
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
     """Write the results of a well as CSV."""
     with _lab() as lab:
-        lab.write_csv(well, out, unit=unit, where=where)
-    show.tell(f"Wrote {out}.")
+        lab.write_csv(well, out, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
 
 
 @write_app.command("parquet")
-def write_parquet(well: Well, out: OutFile, unit: DepthUnit = "", where: Where = "") -> None:
+def write_parquet(
+    well: Well,
+    out: OutFile,
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
     """Write the results of a well as Parquet."""
     with _lab() as lab:
-        lab.write_parquet(well, out, unit=unit, where=where)
-    show.tell(f"Wrote {out}.")
+        lab.write_parquet(well, out, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
 
 
 def run() -> None:

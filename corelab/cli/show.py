@@ -203,6 +203,11 @@ def event_words(detail: str) -> str:
     for name, value in json.loads(detail).items():
         if name == "files":
             parts.append(f"{len(value)} file{'' if len(value) == 1 else 's'}")
+        elif isinstance(value, list):
+            listed = ", ".join(map(str, value[:8])) + (
+                f" and {len(value) - 8} more" if len(value) > 8 else ""
+            )
+            parts.append(f"{name} {listed}")
         elif isinstance(value, dict):
             counts = ", ".join(f"{count} of {kind}" for kind, count in value.items())
             parts += [f"{name} {counts}"] if counts else []

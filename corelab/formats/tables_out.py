@@ -31,6 +31,11 @@ def write_text(path: Path, text: str) -> None:
     _replace(path, lambda part: part.write_text(text, encoding="utf-8"))
 
 
+def write_bytes(path: Path, content: bytes) -> None:
+    """A file as it is."""
+    _replace(path, lambda part: part.write_bytes(content))
+
+
 def _replace(path: Path, write: Callable[[Path], object]) -> None:
     """Write beside the target and put it in place whole, so that a failure leaves the old file."""
     if not path.absolute().parent.is_dir():

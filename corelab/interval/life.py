@@ -13,6 +13,7 @@ from corelab.interval.select import plugs_of_well
 from corelab.records import store
 from corelab.records.schema import SHEET_TABLES, WITHDRAWAL
 
+_DECIDED = {"approved": "approved the results", "revoked": "took the approval back"}
 COLUMNS = ("event", "at", "person", "what", "why", "command")
 
 
@@ -37,6 +38,8 @@ def of_plug(connection: sa.Connection, plug: int) -> pd.DataFrame:
     for withdrawal in store.withdrawals_of(connection, numbers).to_dict("records"):
         what = f"withdrew {withdrawal['withdrawn_kind']} #{int(withdrawal['supersedes'])}"
         lines.append(_line(withdrawal, what))
+    for decision in store.decisions_on(connection, [plug]).to_dict("records"):
+        lines.append(_line(decision, _DECIDED.get(decision["what"], decision["what"])))
     lines.sort(key=lambda line: line["event"])
     return pd.DataFrame(lines, columns=list(COLUMNS))
 
@@ -56,6 +59,19 @@ def of_well(connection: sa.Connection, identities: store.Identities, well: int) 
             gone = int(group.loc[withdrawn, "count"].sum())
             what += f"{'; ' if what else ''}withdrew {gone} reading{'' if gone == 1 else 's'}"
         lines.append(_line(first.to_dict(), what))
+    decisions = store.decisions_on(connection, plugs_of_well(identities, well))
+    for _, group in decisions.groupby(["event", "what"], sort=True):
+        what = str(group["what"].iloc[0])
+        names = [identities.name("plug", int(p)) for p in group["plug_id"]]
+        shown = ", ".join(names[:8]) + (f" and {len(names) - 8} more" if len(names) > 8 else "")
+        verb = {"approved": "approved the results of", "revoked": "took back the approval of"}
+        words = f"{verb[what]} {shown}" if what in verb else f"{what}: {shown}"
+        lines.append(_line(group.iloc[0].to_dict(), words))
+    for export in store.rows_of(store.exports(connection, well)):
+        words = f"issued {export['file']} (export {export['id']}, issue {export['issue']})"
+        words += f" to {export['recipient']}" if export["recipient"] else ""
+        lines.append(_line(export | {"command": f"write {export['kind']}"}, words))
+    lines.sort(key=lambda line: line["event"])
     return pd.DataFrame(lines, columns=list(COLUMNS))
 
 

@@ -20,6 +20,7 @@ from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
 from corelab.interval import where as conditions
+from corelab.interval.frozen import released_words, shown_results
 from corelab.interval.stress import equivalent_stress_mpa, near, with_interpolated
 from corelab.quantities import RESULTS
 from corelab.records import store
@@ -279,7 +280,8 @@ def _add_results(
     frame: pd.DataFrame, connection: sa.Connection, stored: Mapping[str, str], stress_mpa: float | None
 ) -> None:
     ids = frame["plug_id"].to_numpy(dtype=np.int64)
-    results = store.results(connection, set(ids.tolist()))
+    now = store.results(connection, set(ids.tolist()))
+    results, status = shown_results(connection, now, set(ids.tolist()))
     place = pd.Series(np.arange(len(ids)), index=ids)
     results = results.assign(place=place.reindex(results["plug_id"]).to_numpy())
     if stress_mpa is not None:
@@ -289,7 +291,7 @@ def _add_results(
     for column in COMPUTED:
         frame[f"u {column}"] = np.nan
     frame["crush verdict"] = np.where(frame["source"] == "percussion sidewall", "not assessed", "")
-    frame["status"] = "computed"
+    frame["status"] = status.reindex(ids).to_numpy()
     doubts: list[dict[str, None]] = [{} for _ in range(len(frame))]
     reasons: list[dict[str, list[str]]] = [{} for _ in range(len(frame))]
     for quantity in (*_VOLUMES, *_SATURATIONS):
@@ -302,6 +304,8 @@ def _add_results(
             _set(frame, "porosity route", at, there["basis"].to_numpy())
             _set(frame, "porosity stress [MPa]", at, there["stress_mpa"].to_numpy())
     _add_permeability(frame, results, stored, stress_mpa, doubts, reasons)
+    for number, words in released_words(connection, now, set(ids.tolist())).items():
+        doubts[int(place[number])][words] = None
     for number, words in store.crush_verdicts(connection, set(ids.tolist())):
         doubts[int(place[number])][words] = None
     frame["flags"] = [_joined(d, r) for d, r in zip(doubts, reasons, strict=True)]

@@ -168,3 +168,18 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
             f"{engine.url.database} is not a database of corelab, or it is damaged: give another file, or "
             "restore a backup."
         ) from trouble
+
+
+@contextmanager
+def file_trouble_named(file: Path) -> Iterator[None]:
+    """Trouble with an SQLite file that is copied as a whole, in words that lead on."""
+    import sqlite3
+
+    try:
+        yield
+    except sqlite3.Error as trouble:
+        raise Unavailable(
+            f"{file} cannot be used ({trouble}): it is no lab, it is damaged or in use, or its disk is full."
+        ) from trouble
+    except OSError as trouble:
+        raise Unavailable(f"{file} cannot be used ({trouble.strerror}).") from trouble

@@ -10,6 +10,8 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Iterable, Mapping, Sequence
+from contextlib import suppress
+from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from typing import Any
 
@@ -23,13 +25,21 @@ NO_DIGEST = "0" * 64
 def packed(values: Iterable[object]) -> bytes:
     """The one way in which values are written before they are hashed: JSON without spaces, -0.0 as 0.0.
 
+    Bytes (a file that left the laboratory) are written as their SHA-256.
+
     Raises
     ------
     ValueError
         If a value is not a number (NaN) or infinite: neither has a place in the record.
     """
-    plain = [0.0 if isinstance(v, float) and v == 0.0 else v for v in values]
+    plain = [_plain(value) for value in values]
     return json.dumps(plain, ensure_ascii=False, separators=(",", ":"), allow_nan=False).encode()
+
+
+def _plain(value: object) -> object:
+    if isinstance(value, float) and value == 0.0:
+        return 0.0
+    return hashlib.sha256(value).hexdigest() if isinstance(value, bytes) else value
 
 
 def row_digest(table: str, values: Mapping[str, object]) -> str:
@@ -167,56 +177,154 @@ def guard(connection: sa.Connection) -> None:
             connection.exec_driver_sql(statement)
 
 
-def chain_faults(connection: sa.Connection) -> list[str]:
-    """What does not fit in the chain of events and in the rows they closed; empty where all is whole."""
+def guard_faults(connection: sa.Connection) -> list[str]:
+    """Which triggers that guard the record are missing, changed or switched off, and which are strangers."""
     faults: list[str] = []
-    of_event = _digests_by_event(connection, faults)
+    if connection.dialect.name == "postgresql":
+        rows = connection.exec_driver_sql(
+            "SELECT t.tgname, c.relname, t.tgenabled FROM pg_trigger t JOIN pg_class c ON c.oid = t.tgrelid "
+            "JOIN pg_namespace n ON n.oid = c.relnamespace "
+            "WHERE NOT t.tgisinternal AND n.nspname = current_schema()"
+        )
+        there = {name: (table, "enabled" if state in ("O", "A") else "off") for name, table, state in rows}
+        wanted = {
+            statement.split()[2]: (table.name, "enabled")
+            for table in schema.APPEND_ONLY
+            for statement in _postgresql_guards(table)
+        }
+        body = connection.exec_driver_sql(
+            "SELECT prosrc FROM pg_proc WHERE proname = 'corelab_append_only'"
+        ).scalar()
+        if (body or "").strip() not in _POSTGRESQL_FUNCTION:
+            faults.append("the function that guards the tables was altered")
+    else:
+        rows = connection.exec_driver_sql("SELECT name, sql FROM sqlite_master WHERE type = 'trigger'")
+        there = {name: (sql, "") for name, sql in rows}
+        wanted = {
+            statement.split()[2]: (statement, "")
+            for table in schema.APPEND_ONLY
+            for statement in _sqlite_guards(table)
+        }
+    faults += [f"the guard {name} is missing" for name in sorted(wanted.keys() - there.keys())]
+    faults += [f"the trigger {name} is not the program's" for name in sorted(there.keys() - wanted.keys())]
+    faults += [
+        f"the guard {name} was altered or switched off"
+        for name in sorted(wanted.keys() & there.keys())
+        if wanted[name] != there[name]
+    ]
+    return faults
+
+
+@dataclass(slots=True)
+class _Rows:
+    """The rows of one event, in the order in which it closed them: what each is, and its digest."""
+
+    names: list[str] = field(default_factory=list)
+    digests: list[str] = field(default_factory=list)
+
+
+#: More rows than this of one event are not tried one by one for the one that was added.
+_TRIED = 3000
+
+
+def chain_faults(connection: sa.Connection) -> list[str]:
+    """What does not fit in the chain of events and in the rows they closed; empty where all is whole.
+
+    Each row altered, removed, added or exchanged is named.
+    """
+    faults: list[str] = []
+    of_event = _rows_by_event(connection, faults)
     previous, expected = NO_DIGEST, 1
     for row in connection.execute(sa.select(schema.event).order_by(schema.event.c.number)).mappings():
         values = dict(row)
         number = values["number"]
         if number != expected:
-            faults.append(f"event {expected} is missing before event {number}")
-        if values["digest"] != event_digest({k: v for k, v in values.items() if k != "digest"}):
+            gone = (
+                f"event {expected} is" if number == expected + 1 else f"events {expected} to {number - 1} are"
+            )
+            faults.append(f"{gone} missing before event {number}")
+        if values["digest"] != _safe_digest("event", {k: v for k, v in values.items() if k != "digest"}):
             faults.append(f"event {number} was altered")
         if values["previous_digest"] != previous:
             faults.append(f"event {number} does not follow the event before it")
-        digests = of_event.pop(number, [])
-        if values["row_count"] != len(digests) or values["rows_digest"] != rows_digest(digests):
-            faults.append(f"the rows of event {number} are not those it closed ({len(digests)} rows)")
+        rows = of_event.pop(number, _Rows())
+        if values["row_count"] != len(rows.digests) or values["rows_digest"] != rows_digest(rows.digests):
+            faults.append(_not_closed(number, values["row_count"], values["rows_digest"], rows))
         previous, expected = values["digest"], number + 1
-    faults += [f"{len(rows)} rows belong to event {n}, which is not there" for n, rows in of_event.items()]
+    for number, rows in of_event.items():
+        named = ", ".join(rows.names[:5]) + (" …" if len(rows.names) > 5 else "")
+        faults.append(f"{len(rows.names)} rows belong to event {number}, which is not there: {named}")
     return faults
 
 
-def _digests_by_event(connection: sa.Connection, faults: list[str]) -> dict[int, list[str]]:
-    of_event: dict[int, list[str]] = {}
+def _not_closed(number: int, count: int, closed: str, rows: _Rows) -> str:
+    there = len(rows.digests)
+    said = f"event {number} closed {count} rows, and {there} are there that are not all those"
+    if there == count + 1 and there <= _TRIED:
+        for place, name in enumerate(rows.names):
+            if rows_digest(rows.digests[:place] + rows.digests[place + 1 :]) == closed:
+                return f"{name} was added to event {number}, which closed {count} rows without it"
+    return said
+
+
+def _safe_digest(table: str, values: Mapping[str, object]) -> str:
+    try:
+        return row_digest(table, values)
+    except ValueError:  # an infinite number, or NaN, which the program never writes
+        return ""
+
+
+def _rows_by_event(connection: sa.Connection, faults: list[str]) -> dict[int, _Rows]:
+    of_event: dict[int, _Rows] = {}
     typed: dict[int, tuple[str, dict[str, Any]]] = {}
     for kind, table in schema.SHEET_TABLES.items():
         for row in connection.execute(sa.select(table)).mappings():
             if row["id"] in typed:
-                faults.append(f"entry {row['id']} has values of two kinds")
+                faults.append(f"entry {row['id']} has values of two kinds, {typed[row['id']][0]} and {kind}")
             typed[row["id"]] = (kind, dict(row))
     for table in schema.APPEND_ONLY[1:]:
         if "event" not in table.c:
             continue
+        expected = 1
         for row in connection.execute(sa.select(table).order_by(table.c.id)).mappings():
             values = dict(row)
+            name = _row_name(table, values)
+            if values["id"] != expected:
+                faults.append(_gap(table, expected, values["id"]))
+            expected = values["id"] + 1
             own = {k: v for k, v in values.items() if k != "digest"}
-            try:
-                if table is schema.entry:
-                    kind, fields = typed.pop(values["id"], (values["kind"], {}))
-                    if kind != values["kind"]:
-                        faults.append(
-                            f"entry {values['id']} is of kind {values['kind']}, its values of {kind}"
-                        )
-                    digest = entry_digest(own, values["kind"], fields)
-                else:
-                    digest = row_digest(table.name, own)
-            except ValueError:  # an infinite number, or NaN, which the program never writes
+            if table is schema.entry:
+                kind, fields = typed.pop(values["id"], ("", {}))
+                if not kind and values["kind"] in schema.SHEET_TABLES:
+                    faults.append(f"the values of {name} are missing")
+                elif kind and kind != values["kind"]:
+                    faults.append(f"{name} has values of {kind}")
                 digest = ""
+                with suppress(ValueError):
+                    digest = entry_digest(own, values["kind"], fields)
+            else:
+                digest = _safe_digest(table.name, own)
             if digest != values["digest"]:
-                faults.append(f"row {values['id']} of {table.name} was altered")
-            of_event.setdefault(values["event"], []).append(values["digest"])
-    faults += [f"values of entry {number}, which is not there" for number in typed]
+                faults.append(f"{name} was altered")
+            rows = of_event.setdefault(values["event"], _Rows())
+            rows.names.append(name)
+            rows.digests.append(values["digest"])
+    faults += [
+        f"values of {kind} stand under entry {n}, which is not there" for n, (kind, _) in typed.items()
+    ]
     return of_event
+
+
+def _row_name(table: sa.Table, values: Mapping[str, Any]) -> str:
+    if table is schema.entry:
+        where = f", row {values['row']} of {values['file']}" if values["file"] else ""
+        return f"entry {values['id']} ({values['kind']}{where})"
+    named = f" ('{values['name']}')" if values.get("name") else ""
+    return f"row {values['id']} of {table.name}{named}"
+
+
+def _gap(table: sa.Table, expected: int, found: int) -> str:
+    what = "entry" if table is schema.entry else f"row of {table.name}"
+    if found < expected:
+        return f"{what} {found} is there twice"
+    return f"{what} {expected}" + (" is missing" if found == expected + 1 else f" to {found - 1} are missing")

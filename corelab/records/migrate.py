@@ -27,6 +27,11 @@ def migrations_folder() -> Path:
     raise Unavailable("the migrations are missing from this installation: install corelab again")
 
 
+def own_tables() -> set[str]:
+    """Every table that belongs to a lab of this version."""
+    return {"alembic_version", *schema.metadata.tables}
+
+
 def schema_version(connection: sa.Connection) -> str:
     """The migration at which a database stands; empty where it holds no lab.
 

@@ -17,7 +17,7 @@ from corelab.quantities import Range
 from corelab.sheets import SHEETS, Column, Sheet
 
 #: The newest migration; `corelab setup` brings a database there.
-SCHEMA = "0001"
+SCHEMA = "0002"
 WITHDRAWAL = "withdrawal"
 
 metadata = sa.MetaData(
@@ -105,6 +105,8 @@ instrument = _identity("instrument")
 person = _identity("person")
 
 ROLES = ("technician", "reviewer", "geologist", "manager")
+#: The role of one who has left the laboratory and may do nothing more.
+LEFT = "left"
 person_role = _table(
     "person_role",
     _id(),
@@ -112,7 +114,18 @@ person_role = _table(
     _to("person.id", "person_id"),
     _text("role"),
     *_digest(),
-    _check("role", f"role IN {ROLES}"),
+    _check("role", f"role IN {(*ROLES, LEFT)}"),
+)
+
+#: What a person's password is checked against; the newest of a person counts.
+credential = _table(
+    "credential",
+    _id(),
+    _event(),
+    _to("person.id", "person_id"),
+    _text("secret"),
+    *_digest(),
+    _check("secret", "secret LIKE '$argon2id$%'"),
 )
 
 setting = _table(
@@ -254,6 +267,62 @@ result = _table(
     _check("value", "value IS NOT NULL OR length(reason) > 0"),
 )
 
+#: One decision on one plug; the newest of a plug counts. `grounds` names the readings it rests on.
+approval = _table(
+    "approval",
+    _id(),
+    _event(),
+    _to("plug.id", "plug_id"),
+    _text("verdict"),
+    _text("grounds"),
+    *_digest(),
+    _check("verdict", "verdict IN ('approved', 'revoked')"),
+)
+
+#: The results as they were approved: they stay as they were whatever is entered later.
+approved_result = _table(
+    "approved_result",
+    _id(),
+    _event(),
+    _to("approval.id", "approval_id"),
+    *(sa.Column(c.name, c.type, nullable=c.nullable) for c in result.columns if c.name != "plug_id"),
+    *_digest(),
+    _check("value_limit", "value_limit IN ('below', 'above')"),
+    _check("value", "value IS NOT NULL OR length(reason) > 0"),
+    sa.UniqueConstraint("approval_id", "quantity", "direction", "stress_mpa", "step"),
+)
+
+#: A manager lets results stand that control blocks; it covers the results as they were, no later ones.
+control_release = _table(
+    "control_release",
+    _id(),
+    _event(),
+    _to("plug.id", "plug_id"),
+    _text("blocked"),
+    _text("results_digest"),
+    *_digest(),
+    _check("blocked", "length(blocked) > 0"),
+    _check("results_digest", "length(results_digest) = 64"),
+)
+
+#: Each file that left the laboratory, byte for byte, and the results it showed.
+export = _table(
+    "export",
+    _id(),
+    _event(),
+    _to("well.id", "well_id"),
+    _text("kind"),
+    _text("recipient"),
+    sa.Column("issue", sa.Integer, nullable=False),
+    _text("file"),
+    _text("request"),
+    _text("shown"),
+    sa.Column("content", sa.LargeBinary, nullable=False),
+    *_digest("content_digest"),
+    *_digest(),
+    _check("issue", "issue > 0"),
+)
+
 #: Tables of which no row is ever changed or removed, in the order in which an event's rows are digested.
 APPEND_ONLY: tuple[sa.Table, ...] = (
     event,
@@ -267,5 +336,10 @@ APPEND_ONLY: tuple[sa.Table, ...] = (
     person_role,
     setting,
     entry,
+    credential,
+    approval,
+    approved_result,
+    control_release,
+    export,
     *SHEET_TABLES.values(),
 )

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import json
 import unicodedata
-from collections.abc import Collection, Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -115,7 +116,7 @@ class Change:
         for row in rows:
             row["event"] = self.number
             row["digest"] = history.row_digest(table.name, row)
-        _insert(self.connection, table, rows)
+        insert(self.connection, table, rows)
         self.digests.setdefault(table.name, []).extend(row["digest"] for row in rows)
 
     def identities(self, identities: Identities) -> None:
@@ -150,9 +151,9 @@ class Change:
                 values = {}
             entry["digest"] = history.entry_digest(entry, item.kind, values)
             entries.append(entry)
-        _insert(self.connection, schema.entry, entries)
+        insert(self.connection, schema.entry, entries)
         for kind, rows in typed.items():
-            _insert(self.connection, schema.SHEET_TABLES[kind], rows)
+            insert(self.connection, schema.SHEET_TABLES[kind], rows)
         self.digests.setdefault("entry", []).extend(entry["digest"] for entry in entries)
         return [entry["id"] for entry in entries]
 
@@ -179,7 +180,7 @@ class Change:
         )
 
 
-def _insert(connection: sa.Connection, table: sa.Table, rows: Sequence[Mapping[str, Any]]) -> None:
+def insert(connection: sa.Connection, table: sa.Table, rows: Sequence[Mapping[Any, Any]]) -> None:
     """Bulk insert by the driver's own executemany: several times faster than the expression language."""
     if not rows:
         return
@@ -201,9 +202,25 @@ def _insert(connection: sa.Connection, table: sa.Table, rows: Sequence[Mapping[s
     )
 
 
-def _superseded(entry_id: sa.ColumnElement[int]) -> sa.ColumnElement[bool]:
+@contextmanager
+def as_of(connection: sa.Connection, event: int) -> Iterator[None]:
+    """Within this, what is in force and which settings hold is answered as it was after an event."""
+    connection.execution_options(corelab_as_of=event)
+    try:
+        yield
+    finally:
+        connection.execution_options(corelab_as_of=None)
+
+
+def _then(connection: sa.Connection) -> int | None:
+    event: int | None = connection.get_execution_options().get("corelab_as_of")
+    return event
+
+
+def _superseded(entry_id: sa.ColumnElement[int], then: int | None = None) -> sa.ColumnElement[bool]:
     newer = schema.entry.alias("newer")
-    return sa.exists(sa.select(sa.literal(1)).where(newer.c.supersedes == entry_id))
+    query = sa.select(sa.literal(1)).where(newer.c.supersedes == entry_id)
+    return sa.exists(query if then is None else query.where(newer.c.event <= then))
 
 
 def in_force(
@@ -224,12 +241,16 @@ def in_force(
         Only rows whose column `by` is one of `ids`.
     """
     table = schema.SHEET_TABLES[kind]
+    then = _then(connection)
+    gone = _superseded(table.c.id, then)
     query = (
         sa.select(table, schema.entry.c.event, schema.entry.c.digest)
         .join(schema.entry, schema.entry.c.id == table.c.id)
-        .where(_superseded(table.c.id) if superseded else ~_superseded(table.c.id))
+        .where(gone if superseded else ~gone)
         .order_by(table.c.id)
     )
+    if then is not None:
+        query = query.where(schema.entry.c.event <= then)
     wanted = None
     if ids is not None:
         wanted = set(ids)
@@ -273,7 +294,7 @@ def replace_results(
     numbers = sorted(plug_ids)
     for start in range(0, len(numbers), 500):
         connection.execute(sa.delete(result).where(result.c.plug_id.in_(numbers[start : start + 500])))
-    _insert(connection, result, rows)
+    insert(connection, result, rows)
 
 
 def results(connection: sa.Connection, plug_ids: Collection[int] | None = None) -> pd.DataFrame:
@@ -287,9 +308,9 @@ def results(connection: sa.Connection, plug_ids: Collection[int] | None = None) 
 
 def settings(connection: sa.Connection) -> dict[str, str]:
     """The settings in force, as text."""
-    rows = connection.execute(
-        sa.select(schema.setting.c.name, schema.setting.c.value).order_by(schema.setting.c.id)
-    )
+    query = sa.select(schema.setting.c.name, schema.setting.c.value).order_by(schema.setting.c.id)
+    then = _then(connection)
+    rows = connection.execute(query if then is None else query.where(schema.setting.c.event <= then))
     return {row.name: row.value for row in rows}
 
 
@@ -310,6 +331,71 @@ def persons(connection: sa.Connection) -> dict[str, tuple[int, str, str]]:
     for number, name, key, role in connection.execute(query):
         found[key] = (number, name, role)
     return found
+
+
+def secrets(connection: sa.Connection) -> dict[int, str]:
+    """By person, what the password now in force is checked against."""
+    query = sa.select(schema.credential.c.person_id, schema.credential.c.secret)
+    return {row.person_id: row.secret for row in connection.execute(query.order_by(schema.credential.c.id))}
+
+
+def approvals(connection: sa.Connection, plug_ids: Collection[int] | None = None) -> pd.DataFrame:
+    """The newest decision on each plug: `id`, `plug_id`, `verdict`, `grounds`, and its event."""
+    return _newest(connection, schema.approval, plug_ids)
+
+
+def releases(connection: sa.Connection, plug_ids: Collection[int] | None = None) -> pd.DataFrame:
+    """The newest release of each plug, and its event."""
+    return _newest(connection, schema.control_release, plug_ids)
+
+
+def _newest(connection: sa.Connection, table: sa.Table, plug_ids: Collection[int] | None) -> pd.DataFrame:
+    event = schema.event
+    query = (
+        sa.select(*(c for c in table.c if c.name != "digest"), event.c.at, event.c.person, event.c.reason)
+        .join(event, event.c.number == table.c.event)
+        .where(table.c.id.in_(sa.select(sa.func.max(table.c.id)).group_by(table.c.plug_id)))
+        .order_by(table.c.plug_id)
+    )
+    frame = frame_of(connection, query)
+    return frame if plug_ids is None else frame[frame["plug_id"].isin(set(plug_ids))].reset_index(drop=True)
+
+
+def approved_results(connection: sa.Connection, plug_ids: Collection[int] | None = None) -> pd.DataFrame:
+    """The frozen results of the plugs whose newest decision is an approval, as rows like `results`."""
+    found = approvals(connection, plug_ids)
+    of_plug = found[found["verdict"] == "approved"].set_index("id")["plug_id"]
+    table = schema.approved_result
+    columns = [c for c in table.c if c.name not in {"id", "event", "digest"}]
+    query = sa.select(*columns).order_by(table.c.id)
+    if len(of_plug) <= _WHOLE_TABLE_FROM:
+        query = query.where(table.c.approval_id.in_([int(n) for n in of_plug.index]))
+    frame = frame_of(connection, query)
+    frame = frame[frame["approval_id"].isin(of_plug.index)].reset_index(drop=True)
+    frame.insert(0, "plug_id", frame["approval_id"].map(of_plug).astype("int64"))
+    return frame.drop(columns="approval_id")
+
+
+def exports(connection: sa.Connection, well_id: int | None = None) -> pd.DataFrame:
+    """What was issued, without the files' contents."""
+    table, event = schema.export, schema.event
+    query = (
+        sa.select(
+            *(c for c in table.c if c.name not in {"content", "digest", "shown"}),
+            event.c.at,
+            event.c.person,
+            event.c.reason,
+        )
+        .join(event, event.c.number == table.c.event)
+        .order_by(table.c.id)
+    )
+    return frame_of(connection, query if well_id is None else query.where(table.c.well_id == well_id))
+
+
+def export_row(connection: sa.Connection, number: int) -> dict[str, Any] | None:
+    """One file that was issued, with its bytes."""
+    row = connection.execute(sa.select(schema.export).where(schema.export.c.id == number)).mappings().first()
+    return None if row is None else dict(row)
 
 
 def entry_row(connection: sa.Connection, number: int) -> dict[str, Any] | None:
@@ -402,6 +488,29 @@ def withdrawals_of(connection: sa.Connection, numbers: Collection[int]) -> pd.Da
     return frame_of(connection, query)
 
 
+def withdrawers_of(connection: sa.Connection, plug_ids: Collection[int]) -> dict[int, set[str]]:
+    """By plug, the keys of the persons who withdrew a reading of it."""
+    entry, old = schema.entry, schema.entry.alias("old")
+    gone = connection.execute(
+        sa.select(old.c.id, old.c.kind, schema.event.c.person)
+        .join(old, old.c.id == entry.c.supersedes)
+        .join(schema.event, schema.event.c.number == entry.c.event)
+        .where(entry.c.kind == schema.WITHDRAWAL)
+    ).all()
+    found: dict[int, set[str]] = {}
+    for kind in {row.kind for row in gone}:
+        table = schema.SHEET_TABLES.get(kind)
+        if table is None or "plug_id" not in table.c:
+            continue
+        by = {row.id: row.person for row in gone if row.kind == kind}
+        about = sa.select(table.c.id, table.c.plug_id).where(
+            table.c.id.in_(sorted(by)), table.c.plug_id.in_(sorted(plug_ids))
+        )
+        for number, plug in connection.execute(about).tuples():
+            found.setdefault(plug, set()).add(name_key(by[number]))
+    return found
+
+
 def entries_by_event(connection: sa.Connection, well_id: int, plug_ids: Collection[int]) -> pd.DataFrame:
     """How many entries of each kind each event brought to a well, its runs and its plugs."""
     entry, event = schema.entry, schema.event
@@ -439,6 +548,25 @@ def entries_by_event(connection: sa.Connection, well_id: int, plug_ids: Collecti
         .order_by(event.c.number, entry.c.kind)
     )
     return frame_of(connection, query)
+
+
+def decisions_on(connection: sa.Connection, plug_ids: Collection[int]) -> pd.DataFrame:
+    """Every approval, revocation and release of these plugs with its event: `plug_id`, `what`, …"""
+    event, approval, released = schema.event, schema.approval, schema.control_release
+    told = (event.c.number.label("event"), event.c.at, event.c.person, event.c.command, event.c.reason)
+    wanted = sorted(plug_ids)
+    both = [
+        sa.select(table.c.plug_id, what.label("what"), *told)
+        .join(event, event.c.number == table.c.event)
+        .where(table.c.plug_id.in_(wanted))
+        .order_by(table.c.id)
+        for table, what in (
+            (approval, approval.c.verdict),
+            (released, sa.literal("released although ", sa.Text).concat(released.c.blocked)),
+        )
+    ]
+    frames = [frame_of(connection, query) for query in both]
+    return pd.concat([f for f in frames if len(f)] or frames[:1], ignore_index=True)
 
 
 def events(connection: sa.Connection) -> pd.DataFrame:

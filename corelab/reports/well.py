@@ -26,6 +26,7 @@ def report(
     person: str,
     recipient: str = "",
     filters: select.Filters | None = None,
+    issue: str = "",
 ) -> WellReport:
     """Everything that the workbook of a well shows, as the record stands now."""
     number = select.well_id(identities, well)
@@ -53,7 +54,8 @@ def report(
         )
     return WellReport(
         well=identities.name("well", number),
-        cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person, entries),
+        cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person, entries)
+        | _standing(connection, results, plug_ids, issue),
         core_runs=runs.iloc[:-1],  # the workbook makes its own totals
         shots=shots,
         results=results,
@@ -110,6 +112,25 @@ def _cover(
         "written by": person,
         "program": f"corelab {__version__}",
         "seal": history.last_seal(connection),
+    }
+
+
+def _standing(
+    connection: sa.Connection, results: pd.DataFrame, plug_ids: list[int], issue: str
+) -> dict[str, str | float | None]:
+    """What of the results is approved, by whom, and which issue this is."""
+    counts = results["status"].value_counts()
+    words = {
+        "approved": "approved",
+        "newer waits": "approved, and something newer waits",
+        "computed": "not reviewed",
+    }
+    newest = store.approvals(connection, plug_ids)
+    by = sorted(set(newest.loc[newest["verdict"] == "approved", "person"]))
+    return {
+        "review": ", ".join(f"{counts[s]} {text}" for s, text in words.items() if s in counts),
+        "approved by": ", ".join(by),
+        "issue": issue,
     }
 
 

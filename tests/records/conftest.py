@@ -45,11 +45,14 @@ def sound_values(kind: str) -> dict[str, Any]:
 
 
 def fill(lab: Lab) -> None:
-    """Two entries of each kind, of which the first is corrected once; the last entry is a withdrawal."""
+    """Two entries of each kind, of which the first is corrected once, and a row in every other table.
+
+    The last entry is a withdrawal.
+    """
     lab.person_add("Ada", "manager")
     lab.by = "Ada"
     lab.setting("laboratory name", "Test bench")
-    with lab._writing() as (connection, person):
+    with lab._writing("load bench sheets") as (connection, person):
         identities = store.Identities.read(connection)
         well = identities.add("well", "W-1")
         identities.add("job", "J-1")
@@ -66,6 +69,34 @@ def fill(lab: Lab) -> None:
         corrected = store.NewEntry("masses", sound_values("masses"), {"a": "3"}, supersedes=1)
         change.entries([corrected, store.NewEntry(schema.WITHDRAWAL, {}, {}, supersedes=2)])
         change.close(person=person, command="mend", program_version="0", reason="a slip", detail={})
+        change = store.Change.begin(connection)
+        change.rows(schema.credential, [{"id": 1, "person_id": 1, "secret": "$argon2id$v=19$some$words"}])
+        change.rows(
+            schema.approval, [{"id": 1, "plug_id": 1, "verdict": "approved", "grounds": '{"released": ""}'}]
+        )
+        kept: dict[str, Any] = {
+            "id": 1,
+            "approval_id": 1,
+            "quantity": "porosity",
+            "direction": "",
+            "step": "",
+        }
+        kept |= {"stress_mpa": 0.0, "value": 0.2, "uncertainty": 0.001, "value_limit": "below", "version": 1}
+        kept |= {"basis": "bulk-grain", "method": "m", "flags": "", "reason": "", "fingerprint": "f"}
+        change.rows(schema.approved_result, [kept])
+        release = {"id": 1, "plug_id": 1, "blocked": "out of control", "results_digest": "0" * 64}
+        change.rows(schema.control_release, [release])
+        sent = {
+            "id": 1,
+            "well_id": well,
+            "kind": "csv",
+            "recipient": "A partner",
+            "issue": 1,
+            "file": "a.csv",
+        }
+        sent |= {"request": "{}", "shown": "{}", "content": b"a,b\r\n", "content_digest": "1" * 64}
+        change.rows(schema.export, [sent])
+        change.close(person=person, command="decide", program_version="0", detail={})
 
 
 @pytest.fixture(scope="module", params=["sqlite", "postgresql"])

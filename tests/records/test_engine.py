@@ -238,8 +238,8 @@ def test_a_damaged_file_is_named(sqlite_database: str) -> None:
 
 def test_trouble_in_a_bulk_copy_is_named_like_any_other(any_lab: Lab) -> None:
     row = {c.name: 1 for c in schema.well.c} | {"name": None}
-    with pytest.raises(sa.exc.IntegrityError), any_lab._writing() as (connection, _):
-        store._insert(connection, schema.well, [row])
+    with pytest.raises(sa.exc.IntegrityError), any_lab._writing("load bench sheets") as (connection, _):
+        store.insert(connection, schema.well, [row])
 
 
 def test_the_password_of_a_server_stays_out_of_messages(postgresql_database: str) -> None:

@@ -14,6 +14,7 @@ from contextlib import closing
 from pathlib import Path
 from threading import Barrier
 
+import pandas as pd
 import pytest
 import sqlalchemy as sa
 
@@ -23,6 +24,7 @@ from corelab.lab import Lab, Setup
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema
 
+NOW = schema.SCHEMA
 ROOT = Path(__file__).resolve().parents[2]
 
 
@@ -303,14 +305,14 @@ from alembic import op
 
 from corelab.records import schema
 
-revision, down_revision, branch_labels, depends_on = "0002", "0001", None, None
+revision, down_revision, branch_labels, depends_on = "0999", "NEWEST", None, None
 
 
 def upgrade() -> None:
     with op.batch_alter_table("plug", copy_from=schema.plug) as batch:
         batch.alter_column("name_key", type_=sa.Text(), existing_type=sa.String(), existing_nullable=False)
     FAULT
-"""
+""".replace("NEWEST", schema.SCHEMA)
 
 
 @pytest.fixture
@@ -321,7 +323,7 @@ def next_schema(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     path = folder / "versions" / "later.py"
     path.write_text(NEXT.replace("FAULT", ""))
     monkeypatch.setattr(migrate, "migrations_folder", lambda: folder)
-    monkeypatch.setattr(schema, "SCHEMA", "0002")
+    monkeypatch.setattr(schema, "SCHEMA", "0999")
     return path
 
 
@@ -337,7 +339,8 @@ def test_an_upgrade_keeps_every_row_and_the_guards(older_lab: Lab, next_schema: 
         older_lab.seal()
     before = catalogue(older_lab.engine)
     made = older_lab.setup()
-    assert (made.before, made.after) == ("0001", "0002")
+    assert (made.before, made.after) == (NOW, "0999")
+    assert events(older_lab)[-1] == "setup"
     with older_lab._reading() as connection:
         assert history.chain_faults(connection) == []
         assert connection.execute(sa.select(sa.func.count()).select_from(schema.plug)).scalar_one() > 50
@@ -352,7 +355,7 @@ def test_an_sqlite_file_is_copied_before_it_is_upgraded(
     assert copy is not None
     assert copy.parent == Path(sqlite_database).parent
     with closing(sqlite3.connect(copy)) as connection:
-        assert connection.execute("SELECT version_num FROM alembic_version").fetchall() == [("0001",)]
+        assert connection.execute("SELECT version_num FROM alembic_version").fetchall() == [(NOW,)]
         assert connection.execute("SELECT count(*) FROM event").fetchall() == [(1,)]
 
 
@@ -374,3 +377,52 @@ def test_a_failed_upgrade_is_undone(older_lab: Lab, next_schema: Path, fault: st
         assert history.chain_faults(connection) == []
         if connection.dialect.name == "sqlite":
             assert connection.exec_driver_sql("PRAGMA foreign_keys").scalar() == 1
+
+
+# -- upgrading from every schema there ever was, with data in -----------------------------------------------
+
+
+def revisions() -> list[str]:
+    names = sorted(p.name for p in (ROOT / "migrations" / "versions").glob("*.py"))
+    return [re.sub(r".*_(\d{4})_.*", r"\1", name) for name in names]
+
+
+@pytest.mark.parametrize("revision", revisions()[:-1])
+def test_a_filled_lab_of_an_earlier_schema_loses_nothing(
+    nothing: str, revision: str, tmp_path: Path, bench: Path
+) -> None:
+    """The demo lab's rows are put into the tables as they were then, and brought up to date."""
+    with open_lab(str(tmp_path / "now.db"), by="tester") as source:
+        source.setup()
+        source.load([bench])
+        assert source.recompute(check=True).empty
+        older = engines.make_engine(nothing)
+        migrate.upgrade(older, revision)
+        with older.connect() as connection:
+            there = sa.MetaData()
+            there.reflect(connection)
+            rows = 0
+            for table in (*schema.APPEND_ONLY, schema.result):
+                if table.name not in there.tables:
+                    continue
+                names = [c.name for c in there.tables[table.name].columns]
+                assert set(names) <= set(table.c.keys())
+                with source._reading() as now:
+                    found = now.execute(sa.select(*(table.c[n] for n in names))).mappings().all()
+                rows += len(found)
+                if found:
+                    connection.execute(sa.insert(there.tables[table.name]), [dict(r) for r in found])
+            connection.commit()
+        older.dispose()
+        assert rows > 5000
+        expected = {w: source.interval(w) for w in ("QB-1", "QB-2")}
+        seal = source.seal()
+    with open_lab(nothing, by="tester") as lab:
+        with pytest.raises(Unavailable, match="older corelab"):
+            lab.seal()
+        made = lab.setup()
+        assert (made.before, made.after) == (revision, NOW)
+        verified = lab.verify(seal)
+        assert verified.faults == []
+        for well, frame in expected.items():
+            pd.testing.assert_frame_equal(lab.interval(well), frame)

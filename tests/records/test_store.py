@@ -45,7 +45,7 @@ def test_what_is_no_number_never_enters(
 ) -> None:
     field = next(n for n, v in sound(kind).items() if isinstance(v, float))
     entry = store.NewEntry(kind, sound(kind) | {field: value}, {})
-    with pytest.raises(ValueError, match="JSON"), any_lab._writing() as (connection, _):
+    with pytest.raises(ValueError, match="JSON"), any_lab._writing("load bench sheets") as (connection, _):
         store.Change.begin(connection).entries([entry])
     assert typed(any_lab, kind) == []
 
@@ -71,7 +71,7 @@ def test_a_negative_zero_becomes_zero(any_lab: Lab, write_sheet: Write, text: st
 def test_a_number_comes_back_to_the_last_bit(
     any_lab: Lab, sound: Callable[[str], dict[str, Any]], value: float
 ) -> None:
-    with any_lab._writing() as (connection, person):
+    with any_lab._writing("load bench sheets") as (connection, person):
         identities = store.Identities.read(connection)
         identities.add("plug", "1", 1)
         change = store.Change.begin(connection)

@@ -92,7 +92,7 @@ def test_nothing_is_superseded_twice(plug_lab: Lab, write_sheet: Write) -> None:
     again = store.NewEntry(schema.WITHDRAWAL, {}, {}, supersedes=int(old))
     with (
         pytest.raises(sa.exc.DatabaseError, match=r"never changed|uq_entry_supersedes"),
-        plug_lab._writing() as (connection, _),
+        plug_lab._writing("load bench sheets") as (connection, _),
     ):
         store.Change.begin(connection).entries([again])
 
