@@ -708,22 +708,36 @@ def recompute(
 
 @app.command()
 def methods(
-    key: Annotated[str, typer.Argument(metavar="[KEY]", help="Key of one calculation.")] = "",
+    key: Annotated[
+        str, typer.Argument(metavar="[KEY]", help="Key of one calculation, or 'safety' for all cautions.")
+    ] = "",
     form: TableOrJson = "table",
 ) -> None:
-    """The calculations: equation, symbols, units, range, source."""
+    """The calculations: equation, symbols, units, range, source, cautions."""
     from corelab.lab import methods as described
 
     _one_of("--format", form, "table", "json")
+    if key == "safety":
+        from corelab.sheets import safety
+
+        for hazard, text in safety.HAZARDS.items():
+            typer.echo(f"{hazard}: {text}")
+        typer.echo("Limits in air of the United States, as a measure of the danger:")
+        for agent, limits, source in safety.LIMITS:
+            typer.echo(f"  {agent}: {limits} ({source})")
+        typer.echo(safety.DEFER)
+        return
     found = described(key)
     if form == "json":
         show.print_json(found)
     elif key:
         for name, text in found[0].items():
-            typer.echo(f"{name}: {text}")
+            if text:
+                typer.echo(f"{name}: {text}")
     else:
         for method in found:
             typer.echo(f"{method['key']:36}  {method['title']}")
+        typer.echo(f"{'safety':36}  The usual cautions of the bench")
 
 
 @write_app.command("workbook")

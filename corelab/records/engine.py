@@ -162,6 +162,12 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
             hint = "check that the file or the server can be reached"
         raise Unavailable(f"The database {where} cannot be used ({said.strip()}): {hint}.") from trouble
     except sa.exc.DatabaseError as trouble:
+        said = re.sub(r"\s+", " ", str(trouble.orig))
+        if "permission denied" in said or "must be owner" in said:
+            raise Unavailable(
+                f"The server does not let you do this ({said.strip()}): ask who keeps the database for a role "
+                "that may; nothing was written."
+            ) from trouble
         if "not a database" not in str(trouble.orig) and "malformed" not in str(trouble.orig):
             raise
         raise Unavailable(

@@ -94,7 +94,7 @@ def upgrade(engine: sa.Engine, target: str = "head") -> tuple[str, str, Path | N
             config.attributes["connection"] = connection
             command.upgrade(config, target)
             after = schema_version(connection)
-            if after == schema.SCHEMA:
+            if after == schema.SCHEMA and after != before:
                 history.guard(connection)
             if file is not None:
                 broken = connection.exec_driver_sql("PRAGMA foreign_key_check").fetchall()

@@ -13,7 +13,7 @@ from corelab.bench import settings as lab_settings
 from corelab.interval import life, recovery, select
 from corelab.records import history, store
 from corelab.reports.workbook import WellReport
-from corelab.sheets import SHEETS
+from corelab.sheets import SHEETS, safety
 from corelab.sheets.readings import READINGS
 from corelab.version import __version__
 
@@ -183,7 +183,51 @@ def described(formula: Any) -> dict[str, str]:
         "valid": formula.valid,
         "source": formula.source,
         "tested": formula.tested,
+        "caution": _caution(formula.key),
     }
+
+
+#: The sheets on which the readings of a calculation are taken, where taking them can hurt.
+_TAKEN_ON: Mapping[str, tuple[str, ...]] = {
+    **dict.fromkeys(
+        (
+            "bulk-volume-displacement", "bulk-volume-buoyancy", "volume-uncoated", "mercury-density",
+            "toluene-density", "ethanol-density",
+        ),
+        ("immersion",),
+    ),
+    **dict.fromkeys(
+        ("grain-volume-gas-expansion", "calibration-cup", "reference-volume-at-cup-temperature"),
+        ("grain volume",),
+    ),
+    **dict.fromkeys(
+        ("pore-volume-gas-expansion", "calibration-holder", "pore-compressibility", "net-confining-stress"),
+        ("pore volume",),
+    ),
+    "pore-volume-stress-regression": ("pore volume",),
+    **dict.fromkeys(
+        (
+            "gas-permeability", "gas-permeability-geometric", "klinkenberg-regression",
+            "flow-rate-conversion", "forchheimer-regression", "slip-inertia-regression", "slip-corrected",
+            "permeability-stress-regression",
+        ),
+        ("gas permeability",),
+    ),
+    "liquid-permeability": ("liquid permeability",),
+    "pore-volume-saturation": ("masses", "treatments"),
+    **dict.fromkeys(("grain-mass", "grain-density", "bulk-density"), ("masses", "treatments")),
+    **dict.fromkeys(
+        ("water-mass", "brine-volume", "oil-mass", "saturations", "salt-mass"), ("distillation", "treatments")
+    ),
+    **dict.fromkeys(("summation-of-fluids", "retort-bulk-volume", "porosity-summation"), ("retort",)),
+    **dict.fromkeys(("sieve-statistics", "sieve-recovery", "folk-ward"), ("sieve",)),
+}  # fmt: skip
+
+
+def _caution(key: str) -> str:
+    """The cautions of the sheets on which the readings of a calculation are taken, each sentence once."""
+    texts = [SHEETS[kind].caution.removesuffix(safety.DEFER).strip() for kind in _TAKEN_ON.get(key, ())]
+    return " ".join([*dict.fromkeys(texts), safety.DEFER]) if texts else ""
 
 
 def _provenance(entries: pd.DataFrame, identities: store.Identities) -> pd.DataFrame:

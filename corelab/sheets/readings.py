@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
+from corelab.sheets import safety
 from corelab.sheets.declaration import Column, Sheet, choice, name, number
-from corelab.sheets.registers import DEFER
 
 STANDARDS_WELL = "standards"
 GASES = ("nitrogen", "helium", "air")
@@ -29,20 +29,6 @@ _DIRECTION = choice(
 _REFERENCE = number("reference pressure", "Pressure in the reference chamber before it is opened.")
 _EXPANDED = number("expanded pressure", "Pressure after it is opened and steady.")
 
-_GAS = (
-    "Compressed gas: chain the cylinder, use its own regulator, never look into a line; helium and nitrogen "
-    "drive out air, so ventilate or carry an oxygen alarm."
-)
-_CELL = "Confining cells: liquid not gas, shield in place, bleed both sides before opening."
-_MERCURY = (
-    "Mercury: tray, ventilation and vapour monitor, no heating, no gold or bare skin; take spills up at once."
-)
-_HEAT = "Hot glass and flammable vapour: cooling water on before heat, fume hood, no flame, never unattended."
-_RETORT = (
-    "A retort burns at some hundreds of degrees and drives off vapour that can explode: fume hood, shield, "
-    "cooled condenser, gloves for heat."
-)
-_DUST = "Silica dust: wet or under extraction, with breathing protection."
 
 DIMENSIONS = Sheet(
     "dimensions",
@@ -86,7 +72,7 @@ IMMERSION = Sheet(
         name("balance", "The balance's name.", refers="instrument"),
     ),
     either=((("mass in air", "mass immersed"), ("mass displaced",)),),
-    caution=f"{_MERCURY} Toluene and ethanol burn and poison: fume hood. {DEFER}",
+    caution=f"{safety.MERCURY} Toluene and ethanol burn and poison: fume hood. {safety.DEFER}",
 )
 
 MASSES = Sheet(
@@ -111,7 +97,7 @@ MASSES = Sheet(
         number("salt density", "Density of the dried salt; 2.165 sodium chloride, 2.22 sea salt."),
         name("balance", "The balance's name.", refers="instrument"),
     ),
-    caution=f"Let plugs cool before weighing; hot plugs burn and float on warm air. {DEFER}",
+    caution=f"Let plugs cool before weighing; hot plugs burn and float on warm air. {safety.DEFER}",
 )
 
 POROSIMETER_CALIBRATION = Sheet(
@@ -130,7 +116,7 @@ POROSIMETER_CALIBRATION = Sheet(
         _TEMPERATURE,
         number("net confining stress", "Stress on the holder's sleeve."),
     ),
-    caution=f"{_GAS} {DEFER}",
+    caution=f"{safety.GAS} {safety.DEFER}",
 )
 
 GRAIN_VOLUME = Sheet(
@@ -156,7 +142,7 @@ GRAIN_VOLUME = Sheet(
         number("container volume", "Solid volume of a container measured with it."),
     ),
     either=((("reference pressure", "expanded pressure"), ("grain volume",)),),
-    caution=f"{_GAS} {DEFER}",
+    caution=f"{safety.GAS} {safety.DEFER}",
 )
 
 PORE_VOLUME = Sheet(
@@ -174,7 +160,7 @@ PORE_VOLUME = Sheet(
         _BAROMETER,
         _TEMPERATURE,
     ),
-    caution=f"{_GAS} {_CELL} {DEFER}",
+    caution=f"{safety.GAS} {safety.CELL} {safety.DEFER}",
 )
 
 GAS_PERMEABILITY = Sheet(
@@ -212,7 +198,7 @@ GAS_PERMEABILITY = Sheet(
         name("permeameter", "The permeameter's name.", refers="instrument"),
     ),
     either=((("upstream pressure",), ("pressure difference",)),),
-    caution=f"{_GAS} {_CELL} {DEFER}",
+    caution=f"{safety.GAS} {safety.CELL} {safety.DEFER}",
 )
 
 REPORTED_PERMEABILITY = Sheet(
@@ -234,7 +220,7 @@ REPORTED_PERMEABILITY = Sheet(
         number("inertial coefficient", "Inertial resistance reported."),
     ),
     either=((("klinkenberg permeability",), ("gas permeability",)),),
-    caution=f"{_GAS} {DEFER}",
+    caution=f"{safety.GAS} {safety.DEFER}",
 )
 
 LIQUID_PERMEABILITY = Sheet(
@@ -254,7 +240,7 @@ LIQUID_PERMEABILITY = Sheet(
         number("viscosity", "Its viscosity at the temperature of the flow."),
         _TEMPERATURE,
     ),
-    caution=f"{_CELL} {DEFER}",
+    caution=f"{safety.CELL} {safety.DEFER}",
 )
 
 DISTILLATION = Sheet(
@@ -278,7 +264,7 @@ DISTILLATION = Sheet(
         number("oil density", "Density of the oil.", required=True),
         number("thimble mass", "Thimble weighed with the plug, as received and dry."),
     ),
-    caution=f"{_HEAT} {DEFER}",
+    caution=f"{safety.HEAT} {safety.DEFER}",
 )
 
 RETORT = Sheet(
@@ -298,7 +284,7 @@ RETORT = Sheet(
         number("gas volume", "Gas-filled volume of that piece."),
         number("oil density", "Density of the oil."),
     ),
-    caution=f"{_RETORT} {_MERCURY} {DEFER}",
+    caution=f"{safety.RETORT} {safety.MERCURY} {safety.DEFER}",
 )
 
 SIEVE = Sheet(
@@ -312,7 +298,7 @@ SIEVE = Sheet(
         number("aperture", "Aperture of the sieve; 0 for the pan.", required=True, key=True),
         number("mass retained", "Mass left on it.", required=True),
     ),
-    caution=f"{_DUST} {DEFER}",
+    caution=f"{safety.DUST} {safety.DEFER}",
 )
 
 CORE_GAMMA = Sheet(

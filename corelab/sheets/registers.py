@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from corelab.sheets import safety
 from corelab.sheets.declaration import Column, Sheet, choice, date, name, number, text
 
 #: Results for which a standard may carry a certified value.
@@ -77,19 +78,6 @@ TESTS = (
     "masses",
 )
 
-_CUTTING = (
-    "Cutting throws chips and silica dust and is loud: guards on, wet cutting, eye, ear and breathing "
-    "protection. Core may vent hydrogen sulphide, soon past smelling: monitor, ventilate, never alone."
-)
-_CHARGES = (
-    "Never accept or take apart a gun, a bullet or a charge in the laboratory: unfired charges are for "
-    "licensed staff only."
-)
-_SOLVENTS = (
-    "Solvents burn and poison through skin and lungs: fume hood, gloves, no flame, cooling water on before "
-    "heat and never left without it. Ovens: let the solvent drain and vent first."
-)
-DEFER = "Local law, the safety data sheet and the laboratory's licensed practice govern."
 
 JOBS = Sheet(
     "jobs",
@@ -149,7 +137,7 @@ CORE_RUNS = Sheet(
         choice("loss at", "Where the missing core is taken to have been.", "top", "base", default="base"),
         date("cut on", "When the run was cut."),
     ),
-    caution=f"{_CUTTING} Sleeves and barrels can hold pressure: vent before opening. {DEFER}",
+    caution=f"{safety.CUTTING} {safety.PRESSURE} {safety.DEFER}",
 )
 
 CORE_SECTIONS = Sheet(
@@ -166,7 +154,7 @@ CORE_SECTIONS = Sheet(
         text("box", "Box in which it lies."),
         choice("state", "How it is.", "good", "rubble", "preserved", "lost", "elsewhere"),
     ),
-    caution=f"{_CUTTING} {DEFER}",
+    caution=f"{safety.CUTTING} {safety.DEFER}",
 )
 
 SIDEWALL_SHOTS = Sheet(
@@ -203,7 +191,7 @@ SIDEWALL_SHOTS = Sheet(
         text("bullet", "Kind of bullet."),
         text("charge", "Powder charge."),
     ),
-    caution=f"{_CHARGES} {DEFER}",
+    caution=f"{safety.CHARGES} {safety.DEFER}",
 )
 
 PLUGS = Sheet(
@@ -239,7 +227,7 @@ PLUGS = Sheet(
         text("location", "Where it is kept."),
         choice("priority", "How soon it is wanted.", "normal", "rush", default="normal"),
     ),
-    caution=f"{_CUTTING} {DEFER}",
+    caution=f"{safety.CUTTING} {safety.DEFER}",
 )
 
 DESCRIPTIONS = Sheet(
@@ -268,7 +256,7 @@ DESCRIPTIONS = Sheet(
         choice("condition", "How the plug is; several separated by commas.", *CONDITIONS, several=True),
         name("described by", "Who described it."),
     ),
-    caution=f"Ultraviolet lamps hurt eyes and skin. Never smell core for hydrogen sulphide. {DEFER}",
+    caution=f"Ultraviolet lamps hurt eyes and skin. Never smell core for hydrogen sulphide. {safety.DEFER}",
 )
 
 CRUSH_VERDICTS = Sheet(
@@ -385,7 +373,7 @@ TREATMENTS = Sheet(
         date("ended on", "When it ended."),
         text("end point", "What showed that it was done."),
     ),
-    caution=f"{_SOLVENTS} {DEFER}",
+    caution=f"{safety.SOLVENTS} {safety.DEFER}",
 )
 
 NOT_MEASURED = Sheet(
