@@ -165,8 +165,8 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
         said = re.sub(r"\s+", " ", str(trouble.orig))
         if "permission denied" in said or "must be owner" in said:
             raise Unavailable(
-                f"The server does not let you do this ({said.strip()}): ask who keeps the database for a role "
-                "that may; nothing was written."
+                f"The server does not let you do this ({said.strip()}): ask who keeps the database for a "
+                "role that may; nothing was written."
             ) from trouble
         if "not a database" not in str(trouble.orig) and "malformed" not in str(trouble.orig):
             raise
