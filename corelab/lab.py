@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import getpass
+import json
 import tempfile
 from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from contextlib import contextmanager
@@ -20,7 +21,7 @@ from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_y
 from corelab.interval import board, explain, life, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema, store
-from corelab.review import approve, issued, roles
+from corelab.review import approve, entitled, issued, roles
 from corelab.review.issued import Issuing as _Issuing
 from corelab.sheets import SHEETS, STANDARDS_WELL
 from corelab.version import __version__
@@ -226,6 +227,8 @@ class Lab:
     def _set(self, name: str, value: str) -> None:
         setting = lab_settings.setting_named(name)
         text = lab_settings.checked(name, value)
+        if setting.name == "report units":
+            text = ", ".join(entitled.checked_units(text))
         with self._writing("change settings") as (connection, person):
             stored = store.settings(connection)
             if stored.get(setting.name) == text:
@@ -305,6 +308,49 @@ class Lab:
             self._close(change, acting, "person password", {"name": found[1]})
         if own:
             self._signed_in.add(secret)
+
+    def partner_set(
+        self, name: str, *, wells: Sequence[str] = (), columns: Sequence[str] = (), units: str = ""
+    ) -> None:
+        """Say what a partner is entitled to, in the place of what was said before.
+
+        Parameters
+        ----------
+        wells, columns
+            The wells and result columns; all where empty.
+        units
+            Units in which results are written for this partner, such as `ft, psi, %`.
+        """
+        shown = " ".join(name.split())
+        if not shown:
+            raise Usage("A partner needs a name.")
+        with self._writing("say what partners are entitled to") as (connection, person):
+            identities = store.Identities.read(connection)
+            names = [identities.name("well", select.well_id(identities, w)) for w in wells]
+            facts = {
+                "wells": names,
+                "columns": list(entitled.checked_columns(columns)),
+                "units": list(entitled.checked_units(units)),
+            }
+            change = store.Change.begin(connection)
+            row = {"id": store.next_id(connection, schema.partner), "name": shown}
+            change.rows(schema.partner, [row | {k: json.dumps(v) for k, v in facts.items()}])
+            self._close(change, person, "partner set", {"name": shown, **facts})
+
+    def partner_list(self) -> pd.DataFrame:
+        """The registered partners and what they are entitled to."""
+        with self._reading() as connection:
+            known = entitled.partners(connection)
+        rows = [
+            {
+                "partner": p.name,
+                "wells": ", ".join(p.wells) or "all",
+                "columns": ", ".join(p.columns) or "all",
+                "units": ", ".join(p.units),
+            }
+            for p in known.values()
+        ]
+        return pd.DataFrame(rows, columns=["partner", "wells", "columns", "units"])
 
     def person_list(self) -> pd.DataFrame:
         """Who is registered, in which role, and whether they sign in with a password."""
@@ -707,7 +753,7 @@ class Lab:
             filters = select.Filters(unit=unit)
             made = report(
                 at.connection, at.identities, well, person=at.person, recipient=recipient,
-                filters=filters, issue=at.words,
+                filters=filters, issue=at,
             )  # fmt: skip
             write_workbook(part, made)
             return made.results
@@ -741,7 +787,9 @@ class Lab:
         reason: str,
     ) -> Path:
         def make(at: _Issuing, part: Path) -> pd.DataFrame:
-            frame = select.interval(at.connection, at.identities, well, _filters(**filters))
+            chosen = {"unit": at.partner.depth_unit} | {k: v for k, v in filters.items() if v}
+            frame = select.interval(at.connection, at.identities, well, _filters(**chosen))
+            frame = entitled.in_units(entitled.of_partner(frame, at.partner), at.partner.units)
             write(part, frame)
             return frame
 

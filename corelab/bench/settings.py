@@ -78,6 +78,10 @@ SETTINGS: Mapping[str, Setting] = MappingProxyType(
                 low=1.0,
                 high=100000.0,
             ),
+            Setting(
+                "report units",
+                "Units of the workbook and page, such as 'ft, psi, %'; else those of the result columns.",
+            ),
             Setting("depth unit", "Unit of depths where a well does not say.", "m", choices=("m", "ft")),
             Setting(
                 "porosity cut-off",

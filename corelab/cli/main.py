@@ -45,6 +45,10 @@ export_app = typer.Typer(
     rich_markup_mode=None,
     help="Files that were issued: listed, written again, checked.",
 )
+partner_app = typer.Typer(
+    no_args_is_help=True, rich_markup_mode=None, help="Partners, and what they are entitled to."
+)
+app.add_typer(partner_app, name="partner")
 app.add_typer(write_app, name="write")
 app.add_typer(export_app, name="export")
 
@@ -430,6 +434,36 @@ def person_password(
     with _lab() as lab:
         lab.person_password(name, new)
     show.tell(f"{' '.join(name.split())} now signs in with a password at every change of the record.")
+
+
+@partner_app.command("set")
+def partner_set(
+    name: Annotated[str, typer.Argument(metavar="NAME", help="The partner's name.")],
+    wells: Annotated[
+        list[str] | None, typer.Option("--well", metavar="WELL", help="A well; may be repeated; else all.")
+    ] = None,
+    columns: Annotated[
+        list[str] | None,
+        typer.Option("--column", metavar="COLUMN", help="A result column; may be repeated; else all."),
+    ] = None,
+    units: Annotated[
+        str, typer.Option("--units", metavar="UNITS", help="Units of what is written, such as 'ft, psi, %'.")
+    ] = "",
+) -> None:
+    """Say what a partner is entitled to, in the place of what was said before."""
+    with _lab() as lab:
+        lab.partner_set(name, wells=wells or [], columns=columns or [], units=units)
+        frame = lab.partner_list()
+    _show(frame, "table", wrap="columns")
+
+
+@partner_app.command("list")
+def partner_list(form: TableOrJson = "table") -> None:
+    """The partners and what they are entitled to."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.partner_list()
+    _show(frame, form, wrap="columns")
 
 
 @app.command()

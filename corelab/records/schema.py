@@ -17,7 +17,7 @@ from corelab.quantities import Range
 from corelab.sheets import SHEETS, Column, Sheet
 
 #: The newest migration; `corelab setup` brings a database there.
-SCHEMA = "0002"
+SCHEMA = "0005"
 WITHDRAWAL = "withdrawal"
 
 metadata = sa.MetaData(
@@ -323,6 +323,19 @@ export = _table(
     _check("issue", "issue > 0"),
 )
 
+#: What a partner is entitled to; the newest row of a name counts. Empty lists mean everything.
+partner = _table(
+    "partner",
+    _id(),
+    _event(),
+    _text("name"),
+    _text("wells"),
+    _text("columns"),
+    _text("units"),
+    *_digest(),
+    _check("name", "length(name) > 0"),
+)
+
 #: Tables of which no row is ever changed or removed, in the order in which an event's rows are digested.
 APPEND_ONLY: tuple[sa.Table, ...] = (
     event,
@@ -341,5 +354,6 @@ APPEND_ONLY: tuple[sa.Table, ...] = (
     approved_result,
     control_release,
     export,
+    partner,
     *SHEET_TABLES.values(),
 )

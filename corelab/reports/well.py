@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import json
 from collections.abc import Mapping
 from typing import Any
@@ -12,7 +13,9 @@ import sqlalchemy as sa
 from corelab.bench import settings as lab_settings
 from corelab.interval import life, recovery, select
 from corelab.records import history, store
-from corelab.reports.workbook import WellReport
+from corelab.reports.workbook import TableSheet, WellReport
+from corelab.review import entitled
+from corelab.review.issued import Issuing, revisions
 from corelab.sheets import SHEETS, safety
 from corelab.sheets.readings import READINGS
 from corelab.version import __version__
@@ -26,18 +29,26 @@ def report(
     person: str,
     recipient: str = "",
     filters: select.Filters | None = None,
-    issue: str = "",
+    issue: Issuing | None = None,
 ) -> WellReport:
     """Everything that the workbook of a well shows, as the record stands now."""
     number = select.well_id(identities, well)
     filters = filters or select.Filters()
     stored = store.settings(connection)
+    partner = issue.partner if issue else entitled.Partner(recipient)
+    symbols = partner.units or entitled.checked_units(lab_settings.value(stored, "report units"))
+    depth = filters.unit or next((u for u in symbols if u in {"m", "ft"}), "")
+    filters = dataclasses.replace(filters, unit=depth)
     facts = store.in_force(connection, "wells", [number], by="well_id")
     fact = _last(facts)
     unit = select.depth_unit(facts, stored, filters.unit)
     results = select.interval(connection, identities, well, filters)
+    results = entitled.in_units(entitled.of_partner(results, partner), symbols)
     plug_ids = select.plugs_of_well(identities, number)
     entries = life.entries_of_plugs(connection, plug_ids, in_force_only=True)
+    sheets = partner.sheets()
+    if sheets is not None and len(entries):
+        entries = entries[entries["kind"].isin(sheets)]
     runs = recovery.core_runs(connection, identities, number, unit)
     shots = recovery.shots(connection, identities, number)
     used = used_methods(connection, plug_ids)
@@ -55,7 +66,7 @@ def report(
     return WellReport(
         well=identities.name("well", number),
         cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person, entries)
-        | _standing(connection, results, plug_ids, issue),
+        | _standing(connection, results, plug_ids, issue.words if issue else ""),
         core_runs=runs.iloc[:-1],  # the workbook makes its own totals
         shots=shots,
         results=results,
@@ -64,7 +75,29 @@ def report(
         cautions=_cautions(entries),
         remarks=remarks,
         recipient=recipient,
+        tables=_tables(issue, results),
     )
+
+
+def _tables(issue: Issuing | None, results: pd.DataFrame) -> list[TableSheet]:
+    """The sheets of tables that stand between the charts and the methods."""
+    sheets: list[TableSheet] = []
+    if issue is not None:
+        before, changes = revisions(issue, results)
+        told = ["export", "issue", "at", "person", "file", "reason"]
+        first = "This is the first issue to this recipient."
+        same = "Nothing that was shown before has changed since the last issue."
+        sheets.append(
+            TableSheet(
+                "revisions",
+                "earlier issues to the same recipient, and what changed since the last",
+                (
+                    ("Issues before this one", "" if len(before) else first, before[told]),
+                    ("What changed", "" if len(changes) or not len(before) else same, changes),
+                ),
+            )
+        )
+    return sheets
 
 
 def _cover(

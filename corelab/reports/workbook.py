@@ -26,6 +26,15 @@ if TYPE_CHECKING:
 
 
 @dataclass(frozen=True, slots=True)
+class TableSheet:
+    """A sheet of tables: of each its title, what is said of it, and its rows."""
+
+    title: str
+    about: str
+    parts: Sequence[tuple[str, str, pd.DataFrame]]
+
+
+@dataclass(frozen=True, slots=True)
 class WellReport:
     """What the workbook tells of one well, gathered by the caller.
 
@@ -48,6 +57,8 @@ class WellReport:
         Sentences; cautions are also counted on the cover.
     recipient
         For whom; stands on every sheet where given.
+    tables
+        Further sheets, after the charts.
     """
 
     well: str
@@ -60,6 +71,7 @@ class WellReport:
     cautions: Sequence[str]
     remarks: Sequence[str]
     recipient: str = ""
+    tables: Sequence[TableSheet] = ()
 
 
 INK, QUIET, ACCENT, PALE, FAINT, RULE = "26313A", "6B7075", "9C4A1F", "EFEBE0", "E3DDCE", "B9AF98"
@@ -150,7 +162,7 @@ def _workbook(report: WellReport) -> Workbook:
     book = Workbook()
     del book[book.sheetnames[0]]
     _add_styles(book)
-    for title in ("cover", *CONTENTS):
+    for title in ("cover", *_contents(report)):
         book.create_sheet(title)
     sidewall = _texts(report.results, "source").str.contains("sidewall", case=False)
     _cover(book["cover"], report)
@@ -158,6 +170,8 @@ def _workbook(report: WellReport) -> Workbook:
     _results(book["routine results"], report, report.results[~sidewall], CORE_COLUMNS, "core plugs")
     _results(book["sidewall results"], report, report.results[sidewall], SIDEWALL_COLUMNS, "sidewall plugs")
     _charts(book["charts"], book["chart data"], report)
+    for tables in report.tables:
+        _table_sheet(book[tables.title], report, tables)
     _methods(book["methods"], report)
     _provenance(book["provenance"], report)
     _cautions(book["cautions and remarks"], report)
@@ -167,6 +181,16 @@ def _workbook(report: WellReport) -> Workbook:
     book.properties.title = visible(f"Core analysis of well {report.well}")[:250]
     book.properties.creator = visible(str(report.cover.get("laboratory") or ""))[:250]
     return book
+
+
+def _contents(report: WellReport) -> dict[str, str]:
+    """The sheets after the cover, in order, and what each is about."""
+    made: dict[str, str] = {}
+    for title, about in CONTENTS.items():
+        if title == "methods":
+            made |= {tables.title: tables.about for tables in report.tables}
+        made[title] = about
+    return made
 
 
 # --- columns by name -------------------------------------------------------------------------------------
@@ -498,7 +522,7 @@ def _cover(sheet: Worksheet, report: WellReport) -> None:
         row = _paragraph(sheet, row, "None was raised.", 2)
 
     row = _paragraph(sheet, row + 1, "Contents", 2, "section")
-    for title, about in CONTENTS.items():
+    for title, about in _contents(report).items():
         _write(sheet, row, 1, title, "link")
         cell = sheet.cell(row, 1)
         cell.hyperlink = Hyperlink(ref=cell.coordinate, location=f"'{title}'!A1", tooltip=f"go to {title}")
@@ -632,6 +656,21 @@ def _results(
         last,
         "quiet",
     )
+
+
+def _table_sheet(sheet: Worksheet, report: WellReport, tables: TableSheet) -> None:
+    _opening(sheet, report, tables.title.capitalize())
+    widest = max((len(frame.columns) for _, _, frame in tables.parts), default=1)
+    _set_widths(sheet, [11.0] * max(widest, 8))
+    row = 4
+    for title, told, frame in tables.parts:
+        row = _paragraph(sheet, row, title, max(widest, 8), "section")
+        if told:
+            row = _paragraph(sheet, row, told, max(widest, 8))
+        if len(frame):
+            headings = [str(heading) for heading in frame.columns]
+            row = _table(sheet, row, headings, _rows(frame), partial(_shown_in, headings), most=40)
+        row += 1
 
 
 def _methods(sheet: Worksheet, report: WellReport) -> None:

@@ -27,6 +27,7 @@ MAY: Mapping[str, frozenset[str]] = MappingProxyType(
         "write files": _ALL,
         "issue files to a partner": _ROCK,
         "recompute results": frozenset({"reviewer", "manager"}),
+        "say what partners are entitled to": frozenset({"manager"}),
         "change settings": frozenset({"manager"}),
         "register people": frozenset({"manager"}),
         "set one's own password": _ALL,
