@@ -17,7 +17,7 @@ from corelab.quantities import Range
 from corelab.sheets import SHEETS, Column, Sheet
 
 #: The newest migration; `corelab setup` brings a database there.
-SCHEMA = "0005"
+SCHEMA = "0003"
 WITHDRAWAL = "withdrawal"
 
 metadata = sa.MetaData(

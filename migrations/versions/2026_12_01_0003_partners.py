@@ -1,7 +1,7 @@
 """Partners: which wells, columns and units each is entitled to.
 
-Revision ID: 0005
-Revises: 0004
+Revision ID: 0003
+Revises: 0002
 Create Date: 2026-12-01
 """
 
@@ -10,7 +10,7 @@ from __future__ import annotations
 import sqlalchemy as sa
 from alembic import op
 
-revision = "0005"
+revision = "0003"
 down_revision = "0002"
 branch_labels = None
 depends_on = None
