@@ -230,6 +230,10 @@ def _facts(
     if len(well_facts) and not pd.isna(well_facts["job_id"].iloc[-1]):
         jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
         laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
+    spans = [
+        (float(top), float(base), identities.name("run", int(run)))
+        for top, base, run in zip(runs["top_depth_m"], runs["base_depth_m"], runs["run_id"], strict=True)
+    ]
     rows: list[dict[str, Any]] = []
     for plug in plugs.to_dict("records"):
         source, basis, run = plug["from"], "driller", ""
@@ -241,7 +245,7 @@ def _facts(
         elif not pd.isna(plug["run_id"]):
             run = identities.name("run", int(plug["run_id"]))
         else:
-            run = _run_at(runs, plug["depth_m"], identities)
+            run = _run_at(spans, plug["depth_m"])
         rows.append(
             {
                 "plug_id": int(plug["plug_id"]),
@@ -261,9 +265,10 @@ def _facts(
     return pd.DataFrame(rows, columns=columns).astype({"depth [m]": "float64", "log depth [m]": "float64"})
 
 
-def _run_at(runs: pd.DataFrame, depth_m: float, identities: store.Identities) -> str:
-    inside = runs[(runs["top_depth_m"] <= depth_m) & (depth_m <= runs["base_depth_m"])]
-    return identities.name("run", int(inside["run_id"].iloc[0])) if len(inside) == 1 else ""
+def _run_at(spans: Sequence[tuple[float, float, str]], depth_m: float) -> str:
+    """The run that holds a depth, where only one does."""
+    inside = [run for top, base, run in spans if top <= depth_m <= base]
+    return inside[0] if len(inside) == 1 else ""
 
 
 def _place(frame: pd.DataFrame, asked: str) -> None:
