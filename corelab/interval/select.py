@@ -20,6 +20,7 @@ from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
 from corelab.interval import where as conditions
+from corelab.interval.controlled import doubts_of
 from corelab.interval.frozen import released_words, shown_results
 from corelab.interval.stress import equivalent_stress_mpa, near, with_interpolated
 from corelab.quantities import RESULTS
@@ -174,7 +175,7 @@ def interval(
         if not 0.0 <= filters.poisson_ratio < 0.5:
             raise Usage(f"Poisson's ratio lies from 0 to below 0.5; found {filters.poisson_ratio:g}.")
         stress_mpa = equivalent_stress_mpa(stress_mpa, filters.poisson_ratio)
-    _add_results(frame, connection, stored, stress_mpa)
+    _add_results(frame, connection, identities, stored, stress_mpa)
     if unit != "m":
         metre, target = units.unit("m", "length"), units.unit(unit, "length")
         for column in DEPTH_COLUMNS:
@@ -282,7 +283,11 @@ def _place(frame: pd.DataFrame, asked: str) -> None:
 
 
 def _add_results(
-    frame: pd.DataFrame, connection: sa.Connection, stored: Mapping[str, str], stress_mpa: float | None
+    frame: pd.DataFrame,
+    connection: sa.Connection,
+    identities: store.Identities,
+    stored: Mapping[str, str],
+    stress_mpa: float | None,
 ) -> None:
     ids = frame["plug_id"].to_numpy(dtype=np.int64)
     now = store.results(connection, set(ids.tolist()))
@@ -309,6 +314,8 @@ def _add_results(
             _set(frame, "porosity route", at, there["basis"].to_numpy())
             _set(frame, "porosity stress [MPa]", at, there["stress_mpa"].to_numpy())
     _add_permeability(frame, results, stored, stress_mpa, doubts, reasons)
+    for number, said in doubts_of(connection, identities, stored, ids.tolist()).items():
+        doubts[int(place[number])] |= dict.fromkeys(said)
     for number, words in released_words(connection, now, set(ids.tolist())).items():
         doubts[int(place[number])][words] = None
     for number, words in store.crush_verdicts(connection, set(ids.tolist())):
