@@ -18,7 +18,7 @@ from corelab.bench import load as loading
 from corelab.bench import settings as lab_settings
 from corelab.bench.parse import Row
 from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
-from corelab.interval import board, explain, life, recovery, select
+from corelab.interval import board, controlled, explain, life, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, migrate, schema, store
 from corelab.review import approve, entitled, issued, roles
@@ -940,7 +940,34 @@ class Lab:
         self, connection: sa.Connection, identities: store.Identities, plug_ids: Sequence[int]
     ) -> dict[int, str]:
         """By plug, what control says against its results."""
-        return {}
+        found = controlled.doubts_of(connection, identities, store.settings(connection), plug_ids)
+        return {plug: "; ".join(words) for plug, words in found.items()}
+
+    def control(self, instrument: str = "") -> dict[str, pd.DataFrame]:
+        """The state of each instrument, the charts of its check standards, its precision.
+
+        Returns
+        -------
+        dict
+            `instruments`, `charts`, `checks` (one row an occasion), `precision`, `duplicates`.
+        """
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            if instrument and identities.find("instrument", instrument) is None:
+                names = sorted(identities.known("instrument"), key=select.natural_key)
+                raise NotFound(
+                    f"There is no instrument {quoted(instrument)}; {did_you_mean(instrument, names)}"
+                )
+            only = identities.find("instrument", instrument) if instrument else None
+            return controlled.shown(connection, identities, store.settings(connection), only)
+
+    def write_control_charts(self, out: str | Path, instrument: str = "") -> Path:
+        """Draw the control charts into a page (.html) or a picture (.svg, .png)."""
+        from corelab.reports.charts import control_charts, save
+
+        found = self.control(instrument)
+        save(control_charts(found["checks"]), Path(out))
+        return Path(out)
 
     # -- trust --------------------------------------------------------------------------------------------
 

@@ -517,6 +517,36 @@ def release(well: Well, plugs: Plugs = None, reason: Reason = "") -> None:
 
 
 @app.command()
+def control(
+    instrument: Annotated[
+        str, typer.Argument(metavar="[INSTRUMENT]", help="Only this instrument, with its charts.")
+    ] = "",
+    charts: Annotated[
+        Path | None, typer.Option("--charts", metavar="FILE", help="Draw them: .html, .svg or .png.")
+    ] = None,
+    form: TableOrJson = "table",
+) -> None:
+    """Whether instruments are in calibration and in control: state, charts, bias, precision."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.control(instrument)
+        if charts is not None:
+            lab.write_control_charts(charts, instrument)
+            show.tell(f"Wrote {charts}.")
+    if form == "json":
+        show.print_json(
+            [{"part": p, **row} for p, frame in found.items() for row in show.json_records(frame, ())]
+        )
+    else:
+        from corelab.cli import controlled
+
+        controlled.print_control(found, charts_too=bool(instrument))
+    states = found["instruments"]["state"]
+    if states.str.contains("out of control|overdue", regex=True).any():
+        raise typer.Exit(1)
+
+
+@app.command()
 def verify(
     seal: Annotated[str, typer.Option(metavar="VALUE", help="A seal kept from before.")] = "",
     form: TableOrJson = "table",

@@ -20,6 +20,7 @@ from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
 from corelab.interval import where as conditions
+from corelab.interval.controlled import doubts_of
 from corelab.interval.frozen import released_words, shown_results
 from corelab.interval.stress import equivalent_stress_mpa, near, with_interpolated
 from corelab.quantities import RESULTS
@@ -174,7 +175,7 @@ def interval(
         if not 0.0 <= filters.poisson_ratio < 0.5:
             raise Usage(f"Poisson's ratio lies from 0 to below 0.5; found {filters.poisson_ratio:g}.")
         stress_mpa = equivalent_stress_mpa(stress_mpa, filters.poisson_ratio)
-    _add_results(frame, connection, stored, stress_mpa)
+    _add_results(frame, connection, identities, stored, stress_mpa)
     if unit != "m":
         metre, target = units.unit("m", "length"), units.unit(unit, "length")
         for column in DEPTH_COLUMNS:
@@ -230,6 +231,10 @@ def _facts(
     if len(well_facts) and not pd.isna(well_facts["job_id"].iloc[-1]):
         jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
         laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
+    spans = [
+        (float(top), float(base), identities.name("run", int(run)))
+        for top, base, run in zip(runs["top_depth_m"], runs["base_depth_m"], runs["run_id"], strict=True)
+    ]
     rows: list[dict[str, Any]] = []
     for plug in plugs.to_dict("records"):
         source, basis, run = plug["from"], "driller", ""
@@ -241,7 +246,7 @@ def _facts(
         elif not pd.isna(plug["run_id"]):
             run = identities.name("run", int(plug["run_id"]))
         else:
-            run = _run_at(runs, plug["depth_m"], identities)
+            run = _run_at(spans, plug["depth_m"])
         rows.append(
             {
                 "plug_id": int(plug["plug_id"]),
@@ -261,9 +266,10 @@ def _facts(
     return pd.DataFrame(rows, columns=columns).astype({"depth [m]": "float64", "log depth [m]": "float64"})
 
 
-def _run_at(runs: pd.DataFrame, depth_m: float, identities: store.Identities) -> str:
-    inside = runs[(runs["top_depth_m"] <= depth_m) & (depth_m <= runs["base_depth_m"])]
-    return identities.name("run", int(inside["run_id"].iloc[0])) if len(inside) == 1 else ""
+def _run_at(spans: Sequence[tuple[float, float, str]], depth_m: float) -> str:
+    """The run that holds a depth, where only one does."""
+    inside = [run for top, base, run in spans if top <= depth_m <= base]
+    return inside[0] if len(inside) == 1 else ""
 
 
 def _place(frame: pd.DataFrame, asked: str) -> None:
@@ -277,7 +283,11 @@ def _place(frame: pd.DataFrame, asked: str) -> None:
 
 
 def _add_results(
-    frame: pd.DataFrame, connection: sa.Connection, stored: Mapping[str, str], stress_mpa: float | None
+    frame: pd.DataFrame,
+    connection: sa.Connection,
+    identities: store.Identities,
+    stored: Mapping[str, str],
+    stress_mpa: float | None,
 ) -> None:
     ids = frame["plug_id"].to_numpy(dtype=np.int64)
     now = store.results(connection, set(ids.tolist()))
@@ -304,6 +314,8 @@ def _add_results(
             _set(frame, "porosity route", at, there["basis"].to_numpy())
             _set(frame, "porosity stress [MPa]", at, there["stress_mpa"].to_numpy())
     _add_permeability(frame, results, stored, stress_mpa, doubts, reasons)
+    for number, said in doubts_of(connection, identities, stored, ids.tolist()).items():
+        doubts[int(place[number])] |= dict.fromkeys(said)
     for number, words in released_words(connection, now, set(ids.tolist())).items():
         doubts[int(place[number])][words] = None
     for number, words in store.crush_verdicts(connection, set(ids.tolist())):

@@ -574,6 +574,26 @@ def events(connection: sa.Connection) -> pd.DataFrame:
     return frame_of(connection, sa.select(schema.event).order_by(schema.event.c.number))
 
 
+def instruments_read(
+    connection: sa.Connection, plug_ids: Collection[int], instruments: Collection[int]
+) -> pd.DataFrame:
+    """On which days which of these instruments read which of these plugs: readings in force."""
+    queries = []
+    for table in schema.SHEET_TABLES.values():
+        if "plug_id" not in table.c or "measured_on" not in table.c:
+            continue
+        for name in ("instrument_id", "balance_id", "caliper_id", "permeameter_id"):
+            if name in table.c:
+                queries.append(
+                    sa.select(table.c.plug_id, table.c[name].label("instrument_id"), table.c.measured_on)
+                    .where(table.c[name].in_(sorted(instruments)), ~_superseded(table.c.id))
+                    .distinct()
+                )
+    frame = frame_of(connection, sa.union_all(*queries).subquery().select())
+    frame["day"] = [str(d)[:10] if d else "" for d in frame["measured_on"]]
+    return frame[frame["plug_id"].isin(set(plug_ids))].reset_index(drop=True)
+
+
 def crush_verdicts(connection: sa.Connection, plug_ids: Collection[int]) -> list[tuple[int, str]]:
     """What persons judged of plugs: the plug, and the verdict in words."""
     words = {

@@ -39,11 +39,11 @@ def approve(
     withdrew = store.withdrawers_of(connection, plug_ids)
     released = frozen.released_words(connection, results, blocked)
     done = _approved_already(connection, plug_ids, results)
+    there, key = set(valued["plug_id"]), store.name_key(person)
     problems: list[Problem] = []
     for plug in plug_ids:
         name = identities.name("plug", plug)
-        key = store.name_key(person)
-        if plug not in set(valued["plug_id"]):
+        if plug not in there:
             problems.append(
                 Problem(
                     f"no result of plug {name}", "results to approve", "leave it out until it is measured"

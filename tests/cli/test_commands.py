@@ -393,7 +393,11 @@ def test_methods(corelab: Corelab):
     rows = corelab("methods", "--format", "json").rows
     assert all(row["key"] and row["title"] and row["source"] for row in rows)
     listed = corelab("methods").out.splitlines()
-    assert [line.split()[0] for line in listed] == [row["key"] for row in rows]
+    assert [line.split()[0] for line in listed] == [*(row["key"] for row in rows), "safety"]
+    safety = corelab("methods", "safety").out
+    for hazard in ("solvents", "mercury", "compressed gas", "heat", "charges", "sour core"):
+        assert f"{hazard}" in safety
+    assert "licensed practice govern" in corelab("methods", "saturations").out
     shown = corelab("methods", rows[0]["key"]).out
     assert "equation: " in shown
     assert "source: " in shown

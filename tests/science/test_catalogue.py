@@ -181,13 +181,25 @@ COLUMNS = {
         "net_stress_mpa": np.array([5.0, 12.0, 35.0, 5.0, 12.0, 35.0]),
         "group": np.array([0, 0, 0, 1, 1, 1]),
     },
+    "individuals-chart": {"values": np.array([49.6, 47.6, 49.9, 51.3, 47.8])},
+    "grubbs-outlier": {"values": np.array([49.6, 47.6, 49.9, 51.3, 58.8])},
+    "precision": {
+        "values": np.array([10.1, 10.3, 11.0, 11.2, 10.4, 10.45]),
+        "group": np.array([0, 0, 1, 1, 2, 2]),
+    },
     "sieve-statistics": {
         "aperture_mm": np.array([2.0, 1.0, 0.5, 0.25, 0.125, 0.0625]),
         "mass_retained_g": np.array([0.0, 4.0, 8.0, 12.0, 5.0, 2.0]),
         "group": np.zeros(6, dtype=int),
     },
 }
-ANY_SIGN = {("liquid-volume", "liquid_mass_g"), ("saturations", "oil_volume_cm3")}
+ANY_SIGN = {
+    ("liquid-volume", "liquid_mass_g"),
+    ("saturations", "oil_volume_cm3"),
+    ("individuals-chart", "values"),
+    ("grubbs-outlier", "values"),
+    ("precision", "values"),
+}
 ALL = list(formulas().values())
 ELEMENTWISE = [f for f in ALL if f.elementwise]
 GROUPWISE = [f for f in ALL if not f.elementwise]
@@ -343,7 +355,7 @@ def test_the_impossible_is_refused_by_name_place_and_count(formula):
                 formula.compute(**{**given, name: bad})
 
 
-@pytest.mark.parametrize("formula", ALL, ids=named)
+@pytest.mark.parametrize("formula", [f for f in ALL if f.smooth], ids=named)
 def test_complex_step_equals_central_difference(formula):
     given = dict(rows(formula))
     plain = results(formula, given)
