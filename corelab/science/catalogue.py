@@ -9,7 +9,17 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from corelab.science.formula import Formula
 
-MODULES = ("fluids", "volumes", "gas_flow", "saturation", "stress", "texture")
+MODULES = (
+    "fluids",
+    "volumes",
+    "gas_flow",
+    "saturation",
+    "stress",
+    "texture",
+    "trends",
+    "rock_types",
+    "back_transform",
+)
 """Modules of `corelab.science` that declare `FORMULAS`; a new one is named here."""
 
 

@@ -44,6 +44,7 @@ class Formula:
 
     A stored key never changes its meaning; changed numbers mean a higher version. `elementwise` is
     False for an estimator, which takes columns and returns one answer for all of them or for each group.
+    `smooth` is False for one whose answer rests on ranks, choices or a search: no derivative is taken.
     """
 
     key: str
@@ -57,6 +58,7 @@ class Formula:
     tested: str
     compute: Callable[..., Any]
     elementwise: bool = True
+    smooth: bool = True
 
     def outside(self, **inputs: ArrayLike) -> dict[str, Mask]:
         """For each given input that has a published range: where it lies outside (NaN never does)."""

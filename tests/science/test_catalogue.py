@@ -116,6 +116,10 @@ POSSIBLE = {
     "sorting_constant": 0.8,
     "hazen_coefficient": 100.0,
     "kozeny_carman_constant": 180.0,
+    "flow_zone_indicator_um": 2.5,
+    "rock_fabric_number": 2.0,
+    "water_saturation_frac": 0.3,
+    "residual_sd_decades": 0.5,
     "conductivity_cm_s": 0.01,
     "density_g_cm3": 0.998,
     "sieved_mass_g": 33.4,
@@ -128,6 +132,12 @@ TEXTS = {
     "gas": ["nitrogen", "air", "helium"],
     "other_gas": ["helium", "nitrogen", "air"],
     "salt": ["none", "left", "leached"],
+}
+TREND = {
+    "porosity_frac": np.linspace(0.06, 0.28, 12),
+    "permeability_md": np.array(
+        [0.02, 0.09, 0.15, 0.8, 1.7, 12.0, 19.0, 88.0, 160.0, 350.0, 1100.0, 1300.0],
+    ),
 }
 COLUMNS = {
     "calibration-cup": {
@@ -181,13 +191,36 @@ COLUMNS = {
         "net_stress_mpa": np.array([5.0, 12.0, 35.0, 5.0, 12.0, 35.0]),
         "group": np.array([0, 0, 0, 1, 1, 1]),
     },
+    "semilog-trend": TREND,
+    "power-trend": TREND,
+    "kozeny-carman-trend": TREND,
+    "broken-trend": TREND,
+    "reduced-major-axis-trend": TREND,
+    "theil-sen-trend": TREND,
+    "huber-trend": TREND,
+    "timur-trend": {
+        **TREND,
+        "water_saturation_frac": np.array([0.7, 0.5, 0.6, 0.4, 0.3, 0.35, 0.27, 0.2, 0.31, 0.2, 0.15, 0.2]),
+    },
+    "york-trend": {
+        **TREND,
+        "u_porosity_frac": np.full(12, 0.003),
+        "u_permeability_md": 0.05 * TREND["permeability_md"],
+    },
+    "flow-units": {"flow_zone_indicator_um": np.array([0.5, 0.6, 0.55, 0.48, 5.0, 4.6, 5.3, 4.8, 5.1])},
+    "duan-factor": {"residuals_decades": np.array([-0.3, -0.1, 0.0, 0.1, 0.3])},
     "sieve-statistics": {
         "aperture_mm": np.array([2.0, 1.0, 0.5, 0.25, 0.125, 0.0625]),
         "mass_retained_g": np.array([0.0, 4.0, 8.0, 12.0, 5.0, 2.0]),
         "group": np.zeros(6, dtype=int),
     },
 }
-ANY_SIGN = {("liquid-volume", "liquid_mass_g"), ("saturations", "oil_volume_cm3")}
+ANY_SIGN = {
+    ("liquid-volume", "liquid_mass_g"),
+    ("saturations", "oil_volume_cm3"),
+    ("duan-factor", "residuals_decades"),
+}
+LEAVES_MISSING_OUT = {"flow-units"}
 ALL = list(formulas().values())
 ELEMENTWISE = [f for f in ALL if f.elementwise]
 GROUPWISE = [f for f in ALL if not f.elementwise]
@@ -299,7 +332,7 @@ def test_missing_flows_through_its_own_row_only(formula):
             np.testing.assert_allclose(value[[0, 2]], whole[result][[0, 2]], rtol=1e-14)
 
 
-@pytest.mark.parametrize("formula", GROUPWISE, ids=named)
+@pytest.mark.parametrize("formula", [f for f in GROUPWISE if f.key not in LEAVES_MISSING_OUT], ids=named)
 def test_a_missing_reading_makes_its_group_missing(formula):
     given = rows(formula)
     for name, column in given.items():
@@ -343,7 +376,7 @@ def test_the_impossible_is_refused_by_name_place_and_count(formula):
                 formula.compute(**{**given, name: bad})
 
 
-@pytest.mark.parametrize("formula", ALL, ids=named)
+@pytest.mark.parametrize("formula", [f for f in ALL if f.smooth], ids=named)
 def test_complex_step_equals_central_difference(formula):
     given = dict(rows(formula))
     plain = results(formula, given)
