@@ -701,7 +701,14 @@ def trend(
     }  # fmt: skip
     with _lab() as lab:
         if rock_types:
-            _show(lab.rock_types(well, top, base, **filters, percentile=percentile), form)
+            table = lab.rock_types(well, top, base, **filters, percentile=percentile)
+            _show(table, form)
+            from corelab.science.rock_types import CRITERION
+
+            show.tell(f"Flow units: {table['flow unit'].max()}, {CRITERION}.")
+            show.tell(
+                "Throat radii are meant for gas permeability; Lucia's numbers for carbonates without vugs."
+            )
             return
         found = lab.trend(well, top, base, **filters, by=by, model=model)
     if form == "json":

@@ -125,6 +125,10 @@ STACK_LOSS = np.array(
 )  # fmt: skip
 
 
+#: Where the machine has no extended precision, the hardest sets come back to fewer digits.
+EXTENDED = np.finfo(np.longdouble).eps < 1e-18
+
+
 def powers(x, degree):
     return np.vander(np.asarray(x, dtype=np.longdouble), degree + 1, increasing=True)
 
@@ -163,16 +167,17 @@ def test_longley():
         890420.383607373, 84.9149257747669, 0.334910077722432e-01, 0.488399681651699, 0.214274163161675,
         0.226073200069370, 455.478499142212,
     ]  # fmt: skip
-    assert fit.coefficients == pytest.approx(certified, rel=1e-12)
-    assert fit.standard_errors == pytest.approx(errors, rel=1e-12)
-    assert float(fit.residual_sd) == pytest.approx(304.854073561965, rel=1e-12)
+    digits = 1e-12 if EXTENDED else 1e-10
+    assert fit.coefficients == pytest.approx(certified, rel=digits)
+    assert fit.standard_errors == pytest.approx(errors, rel=digits)
+    assert float(fit.residual_sd) == pytest.approx(304.854073561965, rel=digits)
 
 
 @pytest.mark.parametrize("number", WAMPLER)
 def test_wampler(number):
     y, sd = WAMPLER[number]
     fit = tr.least_squares(powers(range(21), 5), y)
-    assert fit.coefficients == pytest.approx(np.ones(6), rel=1e-9)
+    assert fit.coefficients == pytest.approx(np.ones(6), rel=1e-9 if EXTENDED else 1e-6)
     assert float(fit.residual_sd) == pytest.approx(sd, rel=1e-12, abs=1e-8)
 
 
