@@ -29,6 +29,7 @@ from corelab.version import __version__
 if TYPE_CHECKING:
     import sqlalchemy as sa
 
+    from corelab.interval.trend import Trends
     from corelab.review.verify import Verified
 
 
@@ -702,6 +703,61 @@ class Lab:
         )  # fmt: skip
         with self._reading() as connection:
             return select.interval(connection, store.Identities.read(connection), well, filters)
+
+    def trend(
+        self,
+        well: str,
+        top: float | None = None,
+        base: float | None = None,
+        *,
+        depth: str = "",
+        unit: str = "",
+        where: str = "",
+        stress: float | None = None,
+        uniaxial: float | None = None,
+        by: str = "",
+        model: str = "",
+    ) -> Trends:
+        """Fits of log10 permeability on porosity with their prediction bands, ranked.
+
+        The filters are those of `interval`. Horizontal and unoriented plugs, unless `where` names the
+        orientation.
+
+        Parameters
+        ----------
+        by
+            'facies', 'run', 'lithology' or 'orientation'; all plugs together where empty.
+        model
+            One model; all where empty.
+        """
+        from corelab.interval.trend import trend
+
+        _refuse_standards(well)
+        filters = select.Filters(top, base, depth, unit, where, stress, True, uniaxial)
+        with self._reading() as connection:
+            return trend(connection, store.Identities.read(connection), well, filters, by, model)
+
+    def rock_types(
+        self,
+        well: str,
+        top: float | None = None,
+        base: float | None = None,
+        *,
+        depth: str = "",
+        unit: str = "",
+        where: str = "",
+        stress: float | None = None,
+        uniaxial: float | None = None,
+        percentile: int = 35,
+    ) -> pd.DataFrame:
+        """Flow zones, throat radii and rock fabric of each plug; `percentile` is that of Pittman's radius."""
+        from corelab.interval.trend import rock_type_table
+
+        _refuse_standards(well)
+        filters = select.Filters(top, base, depth, unit, where, stress, True, uniaxial)
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            return rock_type_table(connection, identities, well, filters, percentile)
 
     def history(self, well: str = "", plug: str = "") -> pd.DataFrame:
         """Who entered or changed what, when and why."""

@@ -7,7 +7,7 @@ import os
 import sys
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated
+from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
@@ -84,6 +84,12 @@ Where = Annotated[
 ]
 Stress = Annotated[
     float | None, typer.Option(metavar="MPA", help="Net confining stress; else the lowest measured.")
+]
+Uniaxial = Annotated[
+    float | None,
+    typer.Option(
+        metavar="POISSON", help="The stress is uniaxial; take the hydrostatic one that compacts alike."
+    ),
 ]
 Uncertain = Annotated[bool, typer.Option("--with-uncertainty", help="Add the standard uncertainties.")]
 Format = Annotated[
@@ -667,12 +673,7 @@ def interval(
     unit: DepthUnit = "",
     where: Where = "",
     stress: Stress = None,
-    uniaxial: Annotated[
-        float | None,
-        typer.Option(
-            metavar="POISSON", help="The stress is uniaxial; take the hydrostatic one that compacts alike."
-        ),
-    ] = None,
+    uniaxial: Uniaxial = None,
     with_uncertainty: Uncertain = False,
     form: Format = "",
     out: Out = None,
@@ -730,6 +731,60 @@ def _interval_table(frame: pd.DataFrame, room: int | None) -> str:
         lines.append(f"No room for: {', '.join(left_out)}.")
         lines.append("All columns: --format csv, json or parquet; or pass the table on to a pager or a file.")
     return "\n".join(lines)
+
+
+@app.command()
+def trend(
+    well: Well,
+    top: Top = None,
+    base: Base = None,
+    depth: Basis = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    stress: Stress = None,
+    uniaxial: Uniaxial = None,
+    by: Annotated[
+        str,
+        typer.Option(metavar="facies|run|lithology|orientation", help="Fit each apart; else all together."),
+    ] = "",
+    model: Annotated[str, typer.Option(metavar="NAME", help="Fit only this model.")] = "",
+    rock_types: Annotated[
+        bool, typer.Option("--rock-types", help="Show the rock types of each plug instead.")
+    ] = False,
+    percentile: Annotated[
+        int, typer.Option(metavar="10…75", help="Mercury saturation of Pittman's radius, with --rock-types.")
+    ] = 35,
+    form: TableOrJson = "table",
+) -> None:
+    """Porosity-permeability fits with their prediction bands, ranked; rock types of the plugs."""
+    _one_of("--format", form, "table", "json")
+    if rock_types and (by or model):
+        raise Usage("--rock-types shows each plug: leave --by and --model out.")
+    filters: dict[str, Any] = {
+        "depth": depth, "unit": unit, "where": where, "stress": stress, "uniaxial": uniaxial
+    }  # fmt: skip
+    with _lab() as lab:
+        if rock_types:
+            table = lab.rock_types(well, top, base, **filters, percentile=percentile)
+            _show(table, form)
+            from corelab.science.rock_types import CRITERION
+
+            show.tell(f"Flow units: {table['flow unit'].max()}, {CRITERION}.")
+            show.tell(
+                "Throat radii are meant for gas permeability; Lucia's numbers for carbonates without vugs."
+            )
+            return
+        found = lab.trend(well, top, base, **filters, by=by, model=model)
+    if form == "json":
+        show.print_json(found.records)
+        fitted = {record["group"] for record in found.records}
+        for group in found.groups:
+            if group["group"] not in fitted:
+                show.tell(f"No model for {group['group']}: {next(iter(group['not fitted'].values()))}.")
+    else:
+        from corelab.cli import trends
+
+        trends.print_trends(found)
 
 
 @app.command()

@@ -105,6 +105,14 @@ def parse(text: str, columns: Sequence[str]) -> Node:
     return node
 
 
+def named(node: Node) -> set[str]:
+    """The columns that an expression names, without their units."""
+    if isinstance(node, Comparison):
+        return {bare(node.column)}
+    parts = (node.inner,) if isinstance(node, Not) else node.parts
+    return set().union(*map(named, parts))
+
+
 def _tokens(text: str) -> list[_Token]:
     tokens, at = [], 0
     while at < len(text.rstrip()):

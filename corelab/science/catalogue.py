@@ -9,7 +9,18 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from corelab.science.formula import Formula
 
-MODULES = ("fluids", "volumes", "gas_flow", "saturation", "stress", "texture", "control_charts")
+MODULES = (
+    "fluids",
+    "volumes",
+    "gas_flow",
+    "saturation",
+    "stress",
+    "texture",
+    "control_charts",
+    "trends",
+    "rock_types",
+    "back_transform",
+)
 """Modules of `corelab.science` that declare `FORMULAS`; a new one is named here."""
 
 

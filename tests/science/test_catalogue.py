@@ -116,6 +116,10 @@ POSSIBLE = {
     "sorting_constant": 0.8,
     "hazen_coefficient": 100.0,
     "kozeny_carman_constant": 180.0,
+    "flow_zone_indicator_um": 2.5,
+    "rock_fabric_number": 2.0,
+    "water_saturation_frac": 0.3,
+    "residual_sd_decades": 0.5,
     "conductivity_cm_s": 0.01,
     "density_g_cm3": 0.998,
     "sieved_mass_g": 33.4,
@@ -128,6 +132,12 @@ TEXTS = {
     "gas": ["nitrogen", "air", "helium"],
     "other_gas": ["helium", "nitrogen", "air"],
     "salt": ["none", "left", "leached"],
+}
+TREND = {
+    "porosity_frac": np.linspace(0.06, 0.28, 12),
+    "permeability_md": np.array(
+        [0.02, 0.09, 0.15, 0.8, 1.7, 12.0, 19.0, 88.0, 160.0, 350.0, 1100.0, 1300.0],
+    ),
 }
 COLUMNS = {
     "calibration-cup": {
@@ -187,6 +197,24 @@ COLUMNS = {
         "values": np.array([10.1, 10.3, 11.0, 11.2, 10.4, 10.45]),
         "group": np.array([0, 0, 1, 1, 2, 2]),
     },
+    "semilog-trend": TREND,
+    "power-trend": TREND,
+    "kozeny-carman-trend": TREND,
+    "broken-trend": TREND,
+    "reduced-major-axis-trend": TREND,
+    "theil-sen-trend": TREND,
+    "huber-trend": TREND,
+    "timur-trend": {
+        **TREND,
+        "water_saturation_frac": np.array([0.7, 0.5, 0.6, 0.4, 0.3, 0.35, 0.27, 0.2, 0.31, 0.2, 0.15, 0.2]),
+    },
+    "york-trend": {
+        **TREND,
+        "u_porosity_frac": np.full(12, 0.003),
+        "u_permeability_md": 0.05 * TREND["permeability_md"],
+    },
+    "flow-units": {"flow_zone_indicator_um": np.array([0.5, 0.6, 0.55, 0.48, 5.0, 4.6, 5.3, 4.8, 5.1])},
+    "duan-factor": {"residuals_decades": np.array([-0.3, -0.1, 0.0, 0.1, 0.3])},
     "sieve-statistics": {
         "aperture_mm": np.array([2.0, 1.0, 0.5, 0.25, 0.125, 0.0625]),
         "mass_retained_g": np.array([0.0, 4.0, 8.0, 12.0, 5.0, 2.0]),
@@ -199,7 +227,9 @@ ANY_SIGN = {
     ("individuals-chart", "values"),
     ("grubbs-outlier", "values"),
     ("precision", "values"),
+    ("duan-factor", "residuals_decades"),
 }
+LEAVES_MISSING_OUT = {"flow-units"}
 ALL = list(formulas().values())
 ELEMENTWISE = [f for f in ALL if f.elementwise]
 GROUPWISE = [f for f in ALL if not f.elementwise]
@@ -311,7 +341,7 @@ def test_missing_flows_through_its_own_row_only(formula):
             np.testing.assert_allclose(value[[0, 2]], whole[result][[0, 2]], rtol=1e-14)
 
 
-@pytest.mark.parametrize("formula", GROUPWISE, ids=named)
+@pytest.mark.parametrize("formula", [f for f in GROUPWISE if f.key not in LEAVES_MISSING_OUT], ids=named)
 def test_a_missing_reading_makes_its_group_missing(formula):
     given = rows(formula)
     for name, column in given.items():
