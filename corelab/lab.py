@@ -704,6 +704,48 @@ class Lab:
         with self._reading() as connection:
             return select.interval(connection, store.Identities.read(connection), well, filters)
 
+    def summary(
+        self,
+        well: str,
+        top: float | None = None,
+        base: float | None = None,
+        *,
+        depth: str = "",
+        unit: str = "",
+        where: str = "",
+        stress: float | None = None,
+        uniaxial: float | None = None,
+        by: str = "",
+        weights: str = "count",
+        leave_out: Sequence[str] = (),
+        cuts: Mapping[str, float | None] | None = None,
+    ) -> list[dict[str, Any]]:
+        """Averages, spread, heterogeneity, net to gross: one record a group.
+
+        The filters are those of `interval`. Horizontal and unoriented plugs, unless `where` names the
+        orientation.
+
+        Parameters
+        ----------
+        by
+            'facies', 'run', 'lithology' or 'orientation'; all plugs together where empty.
+        weights
+            'count', or 'length' for the length that each plug stands for.
+        leave_out
+            Suspect plugs to leave out: 'crushed', 'cracked', 'flagged'.
+        cuts
+            Cut-offs by name (porosity, permeability, water saturation) in the place of the settings.
+        """
+        from corelab.interval.summary import summary
+
+        _refuse_standards(well)
+        filters = select.Filters(top, base, depth, unit, where, stress, False, uniaxial)
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            return summary(
+                connection, identities, well, filters, by=by, weights=weights, leave_out=leave_out, cuts=cuts
+            )
+
     def trend(
         self,
         well: str,

@@ -102,6 +102,15 @@ SETTINGS: Mapping[str, Setting] = MappingProxyType(
                 high=1e6,
             ),
             Setting(
+                "water saturation cut-off",
+                "Most water saturation of pay.",
+                "0.5",
+                kind="fraction",
+                unit="v/v",
+                low=0.0,
+                high=1.0,
+            ),
+            Setting(
                 "crush prior",
                 "Share of percussion plugs taken to be crushed before any evidence; an assumption.",
                 "0.3",

@@ -734,6 +734,66 @@ def _interval_table(frame: pd.DataFrame, room: int | None) -> str:
 
 
 @app.command()
+def summary(
+    well: Well,
+    top: Top = None,
+    base: Base = None,
+    depth: Basis = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    stress: Stress = None,
+    uniaxial: Uniaxial = None,
+    by: Annotated[
+        str, typer.Option(metavar="facies|run|lithology|orientation", help="Apart; else all together.")
+    ] = "",
+    weights: Annotated[
+        str,
+        typer.Option(metavar="count|length", help="Weigh every plug alike, or by the length it stands for."),
+    ] = "count",
+    leave_out: Annotated[
+        list[str] | None,
+        typer.Option(metavar="crushed|cracked|flagged", help="Leave suspect plugs out; may be repeated."),
+    ] = None,
+    porosity_cut: Annotated[
+        float | None, typer.Option("--porosity-cut-off", metavar="V/V", help="Least porosity of net rock.")
+    ] = None,
+    permeability_cut: Annotated[
+        float | None,
+        typer.Option("--permeability-cut-off", metavar="MD", help="Least permeability of net rock."),
+    ] = None,
+    water_cut: Annotated[
+        float | None,
+        typer.Option("--water-saturation-cut-off", metavar="V/V", help="Most water saturation of pay."),
+    ] = None,
+    form: TableOrJson = "table",
+) -> None:
+    """Averages, spread, heterogeneity and net to gross of an interval."""
+    _one_of("--format", form, "table", "json")
+    cuts = {"porosity": porosity_cut, "permeability": permeability_cut, "water saturation": water_cut}
+    with _lab() as lab:
+        found = lab.summary(
+            well,
+            top,
+            base,
+            depth=depth,
+            unit=unit,
+            where=where,
+            stress=stress,
+            uniaxial=uniaxial,
+            by=by,
+            weights=weights,
+            leave_out=leave_out or [],
+            cuts=cuts,
+        )
+    if form == "json":
+        show.print_json(found)
+    else:
+        from corelab.cli import summaries
+
+        summaries.print_summary(found)
+
+
+@app.command()
 def trend(
     well: Well,
     top: Top = None,

@@ -17,6 +17,8 @@ MODULES = (
     "stress",
     "texture",
     "control_charts",
+    "averages",
+    "heterogeneity",
     "trends",
     "rock_types",
     "back_transform",

@@ -215,6 +215,13 @@ COLUMNS = {
     },
     "flow-units": {"flow_zone_indicator_um": np.array([0.5, 0.6, 0.55, 0.48, 5.0, 4.6, 5.3, 4.8, 5.1])},
     "duan-factor": {"residuals_decades": np.array([-0.3, -0.1, 0.0, 0.1, 0.3])},
+    "means": {"values": np.array([10.0, 50.0, 1000.0]), "weights": np.array([20.0, 15.0, 10.0])},
+    "dykstra-parsons": {"permeability_md": np.array([100.0, 50.0, 20.0, 10.0, 5.0])},
+    "lorenz": {
+        "permeability_md": np.array([100.0, 50.0, 20.0]),
+        "porosity_frac": np.array([0.2, 0.18, 0.15]),
+        "length_m": np.array([0.3, 0.4, 0.3]),
+    },
     "sieve-statistics": {
         "aperture_mm": np.array([2.0, 1.0, 0.5, 0.25, 0.125, 0.0625]),
         "mass_retained_g": np.array([0.0, 4.0, 8.0, 12.0, 5.0, 2.0]),
@@ -229,7 +236,7 @@ ANY_SIGN = {
     ("precision", "values"),
     ("duan-factor", "residuals_decades"),
 }
-LEAVES_MISSING_OUT = {"flow-units"}
+LEAVES_MISSING_OUT = {"flow-units", "dykstra-parsons"}
 ALL = list(formulas().values())
 ELEMENTWISE = [f for f in ALL if f.elementwise]
 GROUPWISE = [f for f in ALL if not f.elementwise]
