@@ -20,7 +20,7 @@ from corelab.bench.parse import Row
 from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
 from corelab.interval import board, controlled, explain, life, recovery, select
 from corelab.records import engine as engines
-from corelab.records import history, migrate, schema, store
+from corelab.records import history, logs, migrate, schema, store
 from corelab.review import approve, entitled, issued, roles
 from corelab.review.issued import Issuing as _Issuing
 from corelab.sheets import SHEETS, STANDARDS_WELL
@@ -746,6 +746,105 @@ class Lab:
                 connection, identities, well, filters, by=by, weights=weights, leave_out=leave_out, cuts=cuts
             )
 
+    def read_las(self, file: str | Path, well: str, *, check: bool = False) -> dict[str, Any]:
+        """Take in a log: its curves are kept with the well, each as it stands in the file.
+
+        The same file again changes nothing; another file of the same name is a newer reading of that log.
+        """
+        from corelab.formats.las_in import read_las
+
+        path = Path(file)
+        las = read_las(path)
+        digest = loading.file_digests([(path, path.name)])[path.name]
+        with self._writing("read in logs and other laboratories' results", keep=not check) as (
+            connection,
+            person,
+        ):
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well)
+            _refuse_standards(well)
+            known = logs.known_log(connection, number, path.stem)
+            told: dict[str, Any] = {
+                "log": path.stem,
+                "well in file": las.well,
+                "curves": [(c.mnemonic, c.unit, c.quantity) for c in las.curves],
+                "samples": len(las.depth_m),
+                "top [m]": float(las.depth_m.min()),
+                "base [m]": float(las.depth_m.max()),
+                "notices": list(las.notices),
+                "new": known is None or known[0] != digest,
+            }
+            named = identities.name("well", number)
+            if las.well and store.name_key(las.well) != store.name_key(named):
+                told["notices"].append(f"the file names the well {las.well}; it was taken for {named}")
+            if told["new"]:
+                change = store.Change.begin(connection)
+                new = [
+                    logs.NewCurve(c.mnemonic, c.unit, c.quantity, c.description, las.depth_m, c.values)
+                    for c in las.curves
+                ]
+                logs.add_curves(change, number, path.stem, path.name, digest, new)
+                detail = {"file": path.name, "well": named, "curves": [c.mnemonic for c in las.curves]}
+                self._close(change, person, "read las", detail)
+        return told
+
+    def match(
+        self,
+        well: str,
+        log: str | Path | None = None,
+        *,
+        curve: str = "",
+        check: bool = False,
+        search: float | None = None,
+    ) -> pd.DataFrame:
+        """Match core runs and gun runs to a log and keep the shifts; `check` only shows them.
+
+        Parameters
+        ----------
+        log
+            A LAS file, read in as by `read_las`; the newest log of the record where None.
+        curve
+            The curve to match with; the first gamma curve, else density or porosity, where empty.
+        search
+            Shifts up to this either way are tried [m].
+        """
+        from corelab.interval import depths
+
+        if log is not None:
+            self.read_las(log, well, check=check)
+        with self._writing("match depths", keep=not check) as (connection, person):
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well)
+            curves = logs.curves(connection, number)
+            if log is not None and check:
+                curves = _unkept(Path(log)) or curves
+            elif log is not None:
+                curves = [c for c in curves if store.name_key(c.log) == store.name_key(Path(log).stem)]
+            found = depths.matched(
+                connection, identities, well, curves, curve=curve, search_m=search or depths.SEARCH_M
+            )
+            if not check:
+                change = store.Change.begin(connection)
+                if depths.keep(change, number, found):
+                    told = {s.run: round(s.match.shift_m, 3) for s in found if s.match is not None}
+                    self._close(change, person, "match", {"well": well, "shifts": told})
+        return depths.shown(found)
+
+    def shift(
+        self, well: str, run: str, shift_m: float, reason: str, *, uncertainty_m: float | None = None
+    ) -> str:
+        """Set a person's own shift of a run: log depth less driller's depth [m]."""
+        from corelab.interval import depths
+
+        _require_reason(reason, "A shift set by hand")
+        with self._writing("match depths") as (connection, person):
+            identities = store.Identities.read(connection)
+            change = store.Change.begin(connection)
+            kind = depths.own_shift(change, identities, well, run, shift_m, uncertainty_m)
+            detail = {"well": well, "run": run, "shift [m]": shift_m}
+            self._close(change, person, "match", detail, reason.strip())
+        return kind
+
     def trend(
         self,
         well: str,
@@ -1173,6 +1272,16 @@ def methods(key: str = "") -> list[dict[str, str]]:
         raise NotFound(f"There is no method {quoted(key)}; {did_you_mean(key, list(known))}")
     chosen: Collection[str] = [key] if key else known
     return [described(known[k]) for k in chosen]
+
+
+def _unkept(file: Path) -> list[logs.LogCurve]:
+    """The curves of a file that is only looked at."""
+    from corelab.formats.las_in import read_las
+
+    las = read_las(file)
+    return [
+        logs.LogCurve(0, file.stem, c.mnemonic, c.unit, c.quantity, las.depth_m, c.values) for c in las.curves
+    ]
 
 
 def role_table() -> pd.DataFrame:

@@ -48,6 +48,10 @@ export_app = typer.Typer(
 partner_app = typer.Typer(
     no_args_is_help=True, rich_markup_mode=None, help="Partners, and what they are entitled to."
 )
+read_app = typer.Typer(
+    no_args_is_help=True, rich_markup_mode=None, help="Logs, and other laboratories' results, taken in."
+)
+app.add_typer(read_app, name="read")
 app.add_typer(partner_app, name="partner")
 app.add_typer(write_app, name="write")
 app.add_typer(export_app, name="export")
@@ -731,6 +735,86 @@ def _interval_table(frame: pd.DataFrame, room: int | None) -> str:
         lines.append(f"No room for: {', '.join(left_out)}.")
         lines.append("All columns: --format csv, json or parquet; or pass the table on to a pager or a file.")
     return "\n".join(lines)
+
+
+@read_app.command("las")
+def read_las(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="A log: LAS 1.2, 2.0 or 3.0.")],
+    well: Annotated[str, typer.Option(metavar="WELL", help="The well it belongs to.")],
+    check: Annotated[bool, typer.Option("--check", help="Only show what is in it.")] = False,
+) -> None:
+    """Take in a log."""
+    with _lab() as lab:
+        told = lab.read_las(file, well, check=check)
+    known = [f"{m} [{u}]" + (f" {q}" if q else "") for m, u, q in told["curves"]]
+    show.tell(
+        f"{told['log']}: {told['samples']} samples, {told['top [m]']:.2f} to {told['base [m]']:.2f} m; "
+        f"{', '.join(known)}"
+    )
+    for notice in told["notices"]:
+        show.tell(f"  {notice}")
+    if check:
+        show.tell("Nothing was written.")
+    elif not told["new"]:
+        show.tell("Nothing changed: the record has this log already.")
+
+
+@app.command()
+def match(
+    well: Well,
+    log: Annotated[
+        Path | None, typer.Option("--log", metavar="FILE.las", help="The log; else the newest read in.")
+    ] = None,
+    curve: Annotated[str, typer.Option(metavar="MNEMONIC", help="The curve to match with.")] = "",
+    check: Annotated[bool, typer.Option("--check", help="Only show the shifts; keep none.")] = False,
+    search: Annotated[
+        float | None, typer.Option(metavar="METRES", help="Try shifts up to this either way; else 5.")
+    ] = None,
+    run: Annotated[str, typer.Option(metavar="RUN", help="The run to shift by hand.")] = "",
+    shift: Annotated[
+        float | None, typer.Option(metavar="LENGTH", help="Its shift: log depth less driller's depth.")
+    ] = None,
+    uncertainty: Annotated[
+        float | None, typer.Option(metavar="LENGTH", help="Standard uncertainty of a shift by hand.")
+    ] = None,
+    unit: DepthUnit = "m",
+    reason: Reason = "",
+    form: TableOrJson = "table",
+) -> None:
+    """Match core depth to log depth and keep the shifts, or set one by hand."""
+    _one_of("--format", form, "table", "json")
+    _one_of("--unit", unit, "m", "ft")
+    if (shift is None) != (not run):
+        raise Usage("A shift by hand needs both: --run RUN and --shift LENGTH.")
+    if shift is not None and (log is not None or check):
+        raise Usage("A shift by hand is set without a log: leave --log and --check out.")
+    metre = 1.0 if unit == "m" else 0.3048
+    with _lab() as lab:
+        if shift is not None:
+            u = None if uncertainty is None else uncertainty * metre
+            kind = lab.shift(well, run, shift * metre, reason, uncertainty_m=u)
+            show.tell(f"The {kind} {run} of {well} is shifted by {shift:+g} {unit}.")
+            return
+        frame = lab.match(well, log, curve=curve, check=check, search=search)
+    if form == "json":
+        show.print_json(show.json_records(frame, ("matched by", "curve", "remark")))
+    else:
+        shown = frame.drop(columns=["probability"]).assign(
+            certain=frame["certain"].map({True: "yes", False: "no"})
+        )
+        decimals = {
+            "shift [m]": 2, "standard uncertainty [m]": 2, "correlation": 3, "second shift [m]": 2,
+            "second correlation": 3,
+        }  # fmt: skip
+        show.print_table(shown, decimals, wrap="remark")
+    unsure = int((~frame["certain"].astype(bool)).sum())
+    if unsure:
+        show.tell(
+            f"{unsure} not certain: compare by eye, and set the shift by hand with "
+            "'corelab match WELL --run RUN --shift LENGTH --reason TEXT' where another is right."
+        )
+    if check:
+        show.tell("Nothing was kept.")
 
 
 @app.command()

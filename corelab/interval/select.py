@@ -24,7 +24,7 @@ from corelab.interval.controlled import doubts_of
 from corelab.interval.frozen import released_words, shown_results
 from corelab.interval.stress import equivalent_stress_mpa, near, with_interpolated
 from corelab.quantities import RESULTS
-from corelab.records import store
+from corelab.records import logs, store
 from corelab.sheets.readings import DIRECTIONS, GASES
 
 #: Headings of an interval, in order; depths in metres until a unit is asked for.
@@ -167,7 +167,7 @@ def interval(
     well_facts = store.in_force(connection, "wells", [number], by="well_id")
     unit = depth_unit(well_facts, stored, filters.unit)
     frame = _facts(connection, identities, number, well_facts, stored)
-    _place(frame, filters.depth)
+    _place(frame, filters.depth, logs.shifts(connection, number))
     stress_mpa = filters.stress_mpa
     if filters.poisson_ratio is not None:
         if stress_mpa is None:
@@ -232,24 +232,29 @@ def _facts(
         jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
         laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
     spans = [
-        (float(top), float(base), identities.name("run", int(run)))
+        (float(top), float(base), int(run))
         for top, base, run in zip(runs["top_depth_m"], runs["base_depth_m"], runs["run_id"], strict=True)
     ]
     rows: list[dict[str, Any]] = []
     for plug in plugs.to_dict("records"):
         source, basis, run = plug["from"], "driller", ""
+        gun, run_id = None, None
         if source == "sidewall":
             gun = None if pd.isna(plug["gun_run_id"]) else int(plug["gun_run_id"])
             tool, basis = of_shot.get((gun or 0, (plug["shot"] or "").casefold()), ("", "log"))
             source = f"{tool} sidewall" if tool else "sidewall, tool not recorded"
             run = identities.name("gun run", gun) if gun is not None else ""
         elif not pd.isna(plug["run_id"]):
-            run = identities.name("run", int(plug["run_id"]))
+            run_id = int(plug["run_id"])
         else:
-            run = _run_at(spans, plug["depth_m"])
+            run_id = _run_at(spans, plug["depth_m"])
+        if run_id is not None:
+            run = identities.name("run", run_id)
         rows.append(
             {
                 "plug_id": int(plug["plug_id"]),
+                "run_id": run_id,
+                "gun_run_id": gun,
                 "well": identities.name("well", well),
                 "plug": identities.name("plug", int(plug["plug_id"])),
                 "source": source,
@@ -262,20 +267,34 @@ def _facts(
                 "lithology": lithology.get(int(plug["plug_id"]), ""),
             }
         )
-    columns = ["plug_id", *REGISTERED]
-    return pd.DataFrame(rows, columns=columns).astype({"depth [m]": "float64", "log depth [m]": "float64"})
+    columns = ["plug_id", "run_id", "gun_run_id", *REGISTERED]
+    numbers = dict.fromkeys(("run_id", "gun_run_id", "depth [m]", "log depth [m]"), "float64")
+    return pd.DataFrame(rows, columns=columns).astype(numbers)
 
 
-def _run_at(spans: Sequence[tuple[float, float, str]], depth_m: float) -> str:
+def _run_at(spans: Sequence[tuple[float, float, int]], depth_m: float) -> int | None:
     """The run that holds a depth, where only one does."""
     inside = [run for top, base, run in spans if top <= depth_m <= base]
-    return inside[0] if len(inside) == 1 else ""
+    return inside[0] if len(inside) == 1 else None
 
 
-def _place(frame: pd.DataFrame, asked: str) -> None:
-    """Depths on the basis asked for where they are known on it, else on the plug's own."""
+def _place(frame: pd.DataFrame, asked: str, shifts: pd.DataFrame) -> None:
+    """Depths on the basis asked for where they are known on it, else on the plug's own.
+
+    A core plug's log depth is its driller's depth and the shift of its run; a shot carries log depth, and
+    the shift of its descent where one is known.
+    """
     own_log = (frame["depth basis"] == "log").to_numpy()
-    frame["log depth [m]"] = np.where(own_log, frame["depth [m]"], np.nan)
+    core = shifts.set_index("run_id")["shift_m"]
+    gun = shifts.set_index("gun_run_id")["shift_m"]
+    depth = frame["depth [m]"].to_numpy(dtype=np.float64)
+    by_core = frame["run_id"].map(core[core.index.notna()]).to_numpy(dtype=np.float64)
+    by_gun = frame["gun_run_id"].map(gun[gun.index.notna()]).to_numpy(dtype=np.float64)
+    frame["log depth [m]"] = np.where(own_log, depth + np.nan_to_num(by_gun), depth + by_core)
+    unsure = shifts[shifts["certain"] == 0]
+    frame["unsure"] = frame["run_id"].isin(unsure["run_id"].dropna()) | frame["gun_run_id"].isin(
+        unsure["gun_run_id"].dropna()
+    )
     if asked == "log":
         known = frame["log depth [m]"].notna().to_numpy()
         frame["depth [m]"] = np.where(known, frame["log depth [m]"], frame["depth [m]"])
@@ -304,6 +323,8 @@ def _add_results(
     frame["status"] = status.reindex(ids).to_numpy()
     doubts: list[dict[str, None]] = [{} for _ in range(len(frame))]
     reasons: list[dict[str, list[str]]] = [{} for _ in range(len(frame))]
+    for place_of in np.flatnonzero(frame["unsure"].to_numpy(dtype=np.bool_)):
+        doubts[int(place_of)]["log depth uncertain"] = None
     for quantity in (*_VOLUMES, *_SATURATIONS):
         candidates = results[results["quantity"] == quantity]
         chosen = _one_stress(candidates, stress_mpa if quantity in _UNDER_STRESS else None)

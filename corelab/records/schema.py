@@ -17,7 +17,7 @@ from corelab.quantities import Range
 from corelab.sheets import SHEETS, Column, Sheet
 
 #: The newest migration; `corelab setup` brings a database there.
-SCHEMA = "0003"
+SCHEMA = "0004"
 WITHDRAWAL = "withdrawal"
 
 metadata = sa.MetaData(
@@ -323,6 +323,47 @@ export = _table(
     _check("issue", "issue > 0"),
 )
 
+#: One curve of a log that was read in: depths [m] and values as JSON lists, null for what is absent.
+log_curve = _table(
+    "log_curve",
+    _id(),
+    _event(),
+    _to("well.id", "well_id"),
+    _text("log"),
+    _text("file"),
+    _text("content_digest"),
+    _text("mnemonic"),
+    _text("unit"),
+    _text("quantity"),
+    _text("description"),
+    _text("depths"),
+    _text("readings"),
+    *_digest(),
+    _check("mnemonic", "length(mnemonic) > 0"),
+    _check("content_digest", "length(content_digest) = 64"),
+)
+
+#: Log depth less driller's depth of a core run, or the shift of a gun run; the newest of a run counts.
+depth_shift = _table(
+    "depth_shift",
+    _id(),
+    _event(),
+    _to("run.id", "run_id", nullable=True),
+    _to("gun_run.id", "gun_run_id", nullable=True),
+    _to("log_curve.id", "log_curve_id", nullable=True),
+    sa.Column("shift_m", Real, nullable=False),
+    sa.Column("uncertainty_m", Real, nullable=True),
+    sa.Column("correlation", Real, nullable=True),
+    sa.Column("certain", sa.Integer, nullable=False),
+    _text("basis"),
+    _text("detail"),
+    *_digest(),
+    _check("one_run", "(run_id IS NULL) <> (gun_run_id IS NULL)"),
+    _check("shift_m", "shift_m >= -500.0 AND shift_m <= 500.0"),
+    _check("certain", "certain IN (0, 1)"),
+    _check("basis", "basis IN ('matched', 'person')"),
+)
+
 #: What a partner is entitled to; the newest row of a name counts. Empty lists mean everything.
 partner = _table(
     "partner",
@@ -355,5 +396,7 @@ APPEND_ONLY: tuple[sa.Table, ...] = (
     control_release,
     export,
     partner,
+    log_curve,
+    depth_shift,
     *SHEET_TABLES.values(),
 )
