@@ -903,12 +903,15 @@ class Lab:
         recipient: str,
         reason: str,
     ) -> Path:
-        """Write a file and keep it, byte for byte, with what it showed; nothing is issued unrecorded."""
-        from corelab.formats.tables_out import write_bytes
+        """Write a file and keep it, byte for byte, with what it showed.
+
+        It gets its name once the record is closed: nothing is issued unrecorded.
+        """
+        from corelab.formats.tables_out import replacing
 
         _refuse_standards(well)
         act = "issue files to a partner" if recipient else "write files"
-        with self._writing(act) as (connection, person):
+        with replacing(out) as beside, self._writing(act) as (connection, person):
             identities = store.Identities.read(connection)
             number = select.well_id(identities, well)
             at = issued.begin(connection, identities, number, kind, recipient, person)
@@ -925,7 +928,7 @@ class Lab:
             }
             detail |= {"export": at.number, "issue": at.issue} | ({"for": recipient} if recipient else {})
             self._close(change, person, f"write {kind}", detail, reason.strip())
-            write_bytes(out, content)
+            beside.write_bytes(content)
         return out
 
     def export_list(self, well: str = "") -> pd.DataFrame:
