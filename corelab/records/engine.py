@@ -156,7 +156,7 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
             hint = "the disk is full; make room and try again: nothing was written"
         elif "readonly" in said or "read-only" in said:
             hint = "it is write-protected for you"
-        elif "not a database" in said or "malformed" in said:
+        elif "not a database" in said or "malformed" in said or "decode to UTF-8" in said:
             hint = "it is not a corelab database, or it is damaged: restore a backup"
         else:
             hint = "check that the file or the server can be reached"
