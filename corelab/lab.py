@@ -184,6 +184,9 @@ class Lab:
         shown = " ".join(manager.split())
         with engines.writing(self.engine) as connection:
             identities = store.Identities.read(connection)
+            known = store.persons(connection)
+            if known.get(store.name_key(shown), (0, "", ""))[2] == "manager":
+                shown = ""  # said again
             change = store.Change.begin(connection)
             detail: dict[str, object] = {"schema": after}
             if identities.find("well", STANDARDS_WELL) is None:
@@ -194,7 +197,7 @@ class Lab:
             elif not shown:
                 return Setup(before, after, backup)
             if shown:
-                if store.persons(connection):
+                if known:
                     raise Usage("People are registered already: 'corelab person add' registers others.")
                 self._add_person(change, shown, "manager", {})
                 detail["manager"] = shown
@@ -1149,6 +1152,8 @@ class Lab:
             if not over_newer:
                 raise
             return None
+        with self._writing("restore", keep=False):
+            pass
         if lost and not over_newer:
             raise Refused(
                 [
@@ -1161,8 +1166,6 @@ class Lab:
                 ],
                 "Nothing was restored: the lab is newer than the backup.",
             )
-        with self._writing("restore", keep=False):
-            pass
         return lost
 
 

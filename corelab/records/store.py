@@ -506,8 +506,8 @@ def withdrawers_of(connection: sa.Connection, plug_ids: Collection[int]) -> dict
         about = sa.select(table.c.id, table.c.plug_id).where(
             table.c.id.in_(sorted(by)), table.c.plug_id.in_(sorted(plug_ids))
         )
-        for number, plug in connection.execute(about).tuples():
-            found.setdefault(plug, set()).add(name_key(by[number]))
+        for row in connection.execute(about):
+            found.setdefault(row.plug_id, set()).add(name_key(by[row.id]))
     return found
 
 

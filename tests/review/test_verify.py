@@ -1,7 +1,7 @@
 """Alterations behind the program's back, drawn at random: `verify` finds and names each.
 
-With CORELAB_CAMPAIGN=full there are 1,000 on SQLite. The hand that alters takes the guards away first and puts
-them back, so that the data alone tell.
+With CORELAB_CAMPAIGN=full there are 1,000 on SQLite. The hand that alters takes the guards away first and
+puts them back, so that the data alone tell.
 """
 
 from __future__ import annotations
