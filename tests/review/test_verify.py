@@ -148,7 +148,7 @@ def named(table: sa.Table, row: Row) -> str:
         return f"event {row['number']}"
     if table is schema.result:
         return f"result {row['quantity']}"
-    return f"row {row['id']} of {table.name}" if "id" in row else ""
+    return f"row {row['id']} of {table.name}" if "id" in row else table.name
 
 
 def fitting(table: sa.Table, row: Row) -> Row:
@@ -413,6 +413,13 @@ def test_a_forger_who_knows_how_is_caught_by_the_seal(lived_in: sa.Engine, campa
             assert told(hand) == []  # nothing but a seal kept elsewhere can tell
         (fault,) = told(hand, seal)
         assert fault.startswith(("the seal is of event", f"event {seal.split('-')[0]} is not the one"))
+
+
+def test_a_second_version_of_the_schema_is_named(lived_in: sa.Engine) -> None:
+    for hand in altering(lived_in, random.Random(0)):
+        hand.run(sa.insert(VERSION).values(version_num="00029"))
+        assert told(hand) == ["the schema 00029 in alembic_version is not the program's"]
+        break
 
 
 def test_a_seal_from_before_holds_as_the_record_grows(staffed: Lab) -> None:
