@@ -123,6 +123,11 @@ DOORS = {
         "recompute results", "recompute", lambda lab, p: lab.recompute(), lambda lab, p: ["recompute"],
         before=_spoil,
     ),
+    "entitle": Door(
+        "say what partners are entitled to", "partner_set",
+        lambda lab, p: lab.partner_set("A partner", columns=["porosity"]),
+        lambda lab, p: ["partner", "set", "A partner", "--column", "porosity"],
+    ),
     "set": Door(
         "change settings", "setting", lambda lab, p: lab.setting("depth unit", "ft"),
         lambda lab, p: ["setting", "depth unit", "ft"],

@@ -61,6 +61,8 @@ def lived_in_file(
         lab.by = "Mara Quist"
         lab.release("QB-2", ["6H", "7H"], "checked by hand")
         lab.person_password("Tor Vale", "another password")
+        lab.partner_set("A partner", wells=["QB-2"], columns=["porosity"])
+        lab.partner_set("A partner", units="ft")
         lab.write_csv("QB-2", folder / "a.csv", recipient="A partner", reason="asked for")
         lab.write_csv("QB-2", folder / "b.csv")
     with closing(sqlite3.connect(path)) as connection:
