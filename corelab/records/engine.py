@@ -14,7 +14,7 @@ import sqlalchemy as sa
 from corelab.errors import Unavailable
 
 OLDEST_SQLITE = (3, 37)
-_WAIT_SECONDS = 30
+_WAIT_SECONDS = 120
 #: Key of the advisory lock that writers on PostgreSQL take before they read the state they change.
 WRITER_LOCK = 0x636F7265
 _NETWORK_FILE_SYSTEMS = {"nfs", "nfs4", "cifs", "smb3", "smbfs", "9p", "fuse.sshfs", "afs", "ncpfs"}
