@@ -275,7 +275,6 @@ def test_the_method(place: Path, name: str, person: str) -> None:
             door.run(lab, place)
             assert (state(lab, place) != before) == door.writes
             assert not door.writes or lab.history()["person"].iloc[-1] == person
-            assert ROLE_OF[person] != "manager" or lab.verify().faults == []
             return
         with pytest.raises(Refused) as refusal:
             door.run(lab, place)

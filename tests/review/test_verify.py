@@ -295,7 +295,7 @@ def test_the_record_as_it_is_has_no_fault(lived_in: sa.Engine) -> None:
 
 def test_every_alteration_is_found_and_named(lived_in: sa.Engine, campaign: Campaign) -> None:
     luck = random.Random(20261201)
-    many = campaign(30, 1000) if lived_in.dialect.name == "sqlite" else campaign(12, 200)
+    many = campaign(20, 1000) if lived_in.dialect.name == "sqlite" else campaign(8, 200)
     missed, unnamed, tried = [], [], Counter[str]()
     for hand in altering(lived_in, luck):
         if tried.total() == many:
@@ -404,7 +404,7 @@ def made_anew(hand: Hand) -> None:
 
 
 def test_a_forger_who_knows_how_is_caught_by_the_seal(lived_in: sa.Engine, campaign: Campaign) -> None:
-    many = campaign(6, 60)
+    many = campaign(3, 60)
     for tried, hand in enumerate(altering(lived_in, random.Random(11))):
         if tried == many:
             break
