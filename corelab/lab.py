@@ -184,6 +184,9 @@ class Lab:
         shown = " ".join(manager.split())
         with engines.writing(self.engine) as connection:
             identities = store.Identities.read(connection)
+            known = store.persons(connection)
+            if known.get(store.name_key(shown), (0, "", ""))[2] == "manager":
+                shown = ""  # said again
             change = store.Change.begin(connection)
             detail: dict[str, object] = {"schema": after}
             if identities.find("well", STANDARDS_WELL) is None:
@@ -194,7 +197,7 @@ class Lab:
             elif not shown:
                 return Setup(before, after, backup)
             if shown:
-                if store.persons(connection):
+                if known:
                     raise Usage("People are registered already: 'corelab person add' registers others.")
                 self._add_person(change, shown, "manager", {})
                 detail["manager"] = shown
@@ -1002,12 +1005,15 @@ class Lab:
         recipient: str,
         reason: str,
     ) -> Path:
-        """Write a file and keep it, byte for byte, with what it showed; nothing is issued unrecorded."""
-        from corelab.formats.tables_out import write_bytes
+        """Write a file and keep it, byte for byte, with what it showed.
+
+        It gets its name once the record is closed: nothing is issued unrecorded.
+        """
+        from corelab.formats.tables_out import replacing
 
         _refuse_standards(well)
         act = "issue files to a partner" if recipient else "write files"
-        with self._writing(act) as (connection, person):
+        with replacing(out) as beside, self._writing(act) as (connection, person):
             identities = store.Identities.read(connection)
             number = select.well_id(identities, well)
             at = issued.begin(connection, identities, number, kind, recipient, person)
@@ -1024,7 +1030,7 @@ class Lab:
             }
             detail |= {"export": at.number, "issue": at.issue} | ({"for": recipient} if recipient else {})
             self._close(change, person, f"write {kind}", detail, reason.strip())
-            write_bytes(out, content)
+            beside.write_bytes(content)
         return out
 
     def export_list(self, well: str = "") -> pd.DataFrame:
@@ -1245,6 +1251,8 @@ class Lab:
             if not over_newer:
                 raise
             return None
+        with self._writing("restore", keep=False):
+            pass
         if lost and not over_newer:
             raise Refused(
                 [
@@ -1257,8 +1265,6 @@ class Lab:
                 ],
                 "Nothing was restored: the lab is newer than the backup.",
             )
-        with self._writing("restore", keep=False):
-            pass
         return lost
 
 

@@ -122,6 +122,13 @@ def write_sheet(tmp_path: Path) -> Callable[..., Path]:
 
 
 @pytest.fixture(scope="session")
+def campaign() -> Callable[[int, int], int]:
+    """How often to try: a few times, or as often as promised where CORELAB_CAMPAIGN is 'full'."""
+    full = os.environ.get("CORELAB_CAMPAIGN") == "full"
+    return lambda few, promised: promised if full else few
+
+
+@pytest.fixture(scope="session")
 def open_data() -> Path:
     """The folder of open data; tests that need it are skipped where none is named."""
     folder = os.environ.get("CORELAB_OPEN_DATA")

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import errno
 import os
+import re
 import sys
 import traceback
 from pathlib import Path
@@ -116,6 +117,11 @@ class _State:
     by = ""
 
 
+def _hidden(text: str) -> str:
+    """A text in which no address of a server shows its password."""
+    return re.sub(r"(://[^/@\s:]*:)\S*@", r"\1***@", text)
+
+
 def _lab() -> Lab:
     from corelab.lab import Lab
 
@@ -189,12 +195,13 @@ def setup(
     """Make the database, or bring it to the newest schema."""
     with _lab() as lab:
         done = lab.setup(manager)
+        where = _hidden(_State.database)
         if done.made:
-            show.tell(f"Made a new lab in {_State.database} (schema {done.after}).")
+            show.tell(f"Made a new lab in {where} (schema {done.after}).")
         elif done.before != done.after:
-            show.tell(f"Brought {_State.database} from schema {done.before} to {done.after}.")
+            show.tell(f"Brought {where} from schema {done.before} to {done.after}.")
         else:
-            show.tell(f"{_State.database} is up to date (schema {done.after}).")
+            show.tell(f"{where} is up to date (schema {done.after}).")
         if done.backup:
             show.tell(f"The lab as it was before is kept in {done.backup}.")
 
@@ -607,7 +614,7 @@ def restore(
     """Bring back a lab from a backup, and check it by its seal."""
     with _lab() as lab:
         done = lab.restore(file, over_newer=over_newer)
-    show.tell(f"Restored {_State.database}. Seal of the backup {done.seal}")
+    show.tell(f"Restored {_hidden(_State.database)}. Seal of the backup {done.seal}")
     if done.kept:
         show.tell(f"The lab as it was before is kept in {done.kept}.")
 
@@ -1084,6 +1091,7 @@ def _log_fault() -> Path | None:
 
     command = " ".join(sys.argv[1:])
     text = f"{datetime.now(UTC).isoformat()} corelab {__version__}: {command}\n{traceback.format_exc()}\n"
+    text = _hidden(text)
     for folder in (Path(_State.database).parent, Path.cwd()):
         try:
             if "://" not in str(folder) and folder.is_dir():

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -37,16 +38,24 @@ def write_bytes(path: Path, content: bytes) -> None:
 
 
 def _replace(path: Path, write: Callable[[Path], object]) -> None:
-    """Write beside the target and put it in place whole, so that a failure leaves the old file."""
+    with replacing(path) as part:
+        write(part)
+
+
+@contextmanager
+def replacing(path: Path) -> Iterator[Path]:
+    """A file beside the target, put in its place whole at the end, so that a failure leaves the old file."""
     if not path.absolute().parent.is_dir():
         raise Unavailable(f"There is no folder {path.absolute().parent}: make it first.")
     part = path.with_name(f".{path.name}.part")
     try:
-        write(part)
+        yield part
         os.replace(part, path)
     except OSError as trouble:
-        part.unlink(missing_ok=True)
         raise Unavailable(
             f"{path} cannot be written ({trouble.strerror or trouble}): see that the folder is there and the "
             "file is not open elsewhere."
         ) from trouble
+    finally:
+        with suppress(OSError):
+            part.unlink(missing_ok=True)

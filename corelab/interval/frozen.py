@@ -53,7 +53,10 @@ def differing(frozen: pd.DataFrame, now: pd.DataFrame) -> pd.DataFrame:
         a, b = both[name].to_numpy(dtype=np.float64), both[f"{name}_then"].to_numpy(dtype=np.float64)
         same &= np.isclose(a, b, rtol=SAME, atol=0.0, equal_nan=True)
     for name in _TEXTS:
-        same &= (both[name].fillna("") == both[f"{name}_then"].fillna("")).to_numpy()
+        now_says, then_said = (
+            both[n].astype(object).where(both[n].notna(), "") for n in (name, f"{name}_then")
+        )
+        same &= (now_says == then_said).to_numpy()
     parted = both[~same].rename(columns={"value_then": "approved"})
     return parted[[*KEY, "value", "approved"]].reset_index(drop=True)
 
@@ -61,17 +64,23 @@ def differing(frozen: pd.DataFrame, now: pd.DataFrame) -> pd.DataFrame:
 def released_words(
     connection: sa.Connection, results: pd.DataFrame, plug_ids: Collection[int]
 ) -> dict[int, str]:
-    """By plug, the release that covers its results as they are now, or were approved: who, and why."""
-    words: dict[int, str] = {}
-    for row in store.rows_of(store.approvals(connection, plug_ids)):
-        kept = json.loads(row["grounds"]).get("released", "")
-        if kept:
-            words[int(row["plug_id"])] = kept
+    """By plug, the release that covers what is shown of it: who, and why."""
+    approved = {
+        int(row["plug_id"]): str(json.loads(row["grounds"]).get("released", ""))
+        for row in store.rows_of(store.approvals(connection, plug_ids))
+    }
+    return covering_releases(connection, results, plug_ids) | {p: w for p, w in approved.items() if w}
+
+
+def covering_releases(
+    connection: sa.Connection, results: pd.DataFrame, plug_ids: Collection[int]
+) -> dict[int, str]:
+    """By plug, the release that covers its results as they are now."""
     found = store.releases(connection, plug_ids)
     if not len(found):
-        return words
+        return {}
     digests = results_digests(results[results["plug_id"].isin(found["plug_id"])])
-    return words | {
+    return {
         int(row["plug_id"]): f"released by {row['person']}: {row['reason']}"
         for row in store.rows_of(found)
         if digests.get(int(row["plug_id"])) == row["results_digest"]

@@ -102,9 +102,8 @@ def _opened(file: Path) -> Iterator[sa.Connection]:
 def lost_by_restoring(target: sa.Connection, file: Path) -> int:
     """How many events of a lab, other than set-ups and backups, are not in a backup."""
     with _opened(file) as connection:
-        kept = dict(
-            connection.execute(sa.select(schema.event.c.number, schema.event.c.digest)).tuples().all()
-        )
+        query = sa.select(schema.event.c.number, schema.event.c.digest)
+        kept = {row.number: row.digest for row in connection.execute(query)}
     event = schema.event
     rows = target.execute(sa.select(event.c.number, event.c.digest, event.c.command))
     return sum(

@@ -14,7 +14,7 @@ import sqlalchemy as sa
 from corelab.errors import Unavailable
 
 OLDEST_SQLITE = (3, 37)
-_WAIT_SECONDS = 30
+_WAIT_SECONDS = 120
 #: Key of the advisory lock that writers on PostgreSQL take before they read the state they change.
 WRITER_LOCK = 0x636F7265
 _NETWORK_FILE_SYSTEMS = {"nfs", "nfs4", "cifs", "smb3", "smbfs", "9p", "fuse.sshfs", "afs", "ncpfs"}
@@ -156,7 +156,7 @@ def trouble_named(engine: sa.Engine) -> Iterator[None]:
             hint = "the disk is full; make room and try again: nothing was written"
         elif "readonly" in said or "read-only" in said:
             hint = "it is write-protected for you"
-        elif "not a database" in said or "malformed" in said:
+        elif "not a database" in said or "malformed" in said or "decode to UTF-8" in said:
             hint = "it is not a corelab database, or it is damaged: restore a backup"
         else:
             hint = "check that the file or the server can be reached"

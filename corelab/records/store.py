@@ -217,10 +217,13 @@ def _then(connection: sa.Connection) -> int | None:
     return event
 
 
+def _until(entries: sa.FromClause, then: int | None) -> list[sa.ColumnElement[bool]]:
+    return [] if then is None else [entries.c.event <= then]
+
+
 def _superseded(entry_id: sa.ColumnElement[int], then: int | None = None) -> sa.ColumnElement[bool]:
     newer = schema.entry.alias("newer")
-    query = sa.select(sa.literal(1)).where(newer.c.supersedes == entry_id)
-    return sa.exists(query if then is None else query.where(newer.c.event <= then))
+    return sa.exists(sa.select(sa.literal(1)).where(newer.c.supersedes == entry_id, *_until(newer, then)))
 
 
 def in_force(
@@ -246,11 +249,9 @@ def in_force(
     query = (
         sa.select(table, schema.entry.c.event, schema.entry.c.digest)
         .join(schema.entry, schema.entry.c.id == table.c.id)
-        .where(gone if superseded else ~gone)
+        .where(gone if superseded else ~gone, *_until(schema.entry, then))
         .order_by(table.c.id)
     )
-    if then is not None:
-        query = query.where(schema.entry.c.event <= then)
     wanted = None
     if ids is not None:
         wanted = set(ids)
@@ -309,8 +310,7 @@ def results(connection: sa.Connection, plug_ids: Collection[int] | None = None) 
 def settings(connection: sa.Connection) -> dict[str, str]:
     """The settings in force, as text."""
     query = sa.select(schema.setting.c.name, schema.setting.c.value).order_by(schema.setting.c.id)
-    then = _then(connection)
-    rows = connection.execute(query if then is None else query.where(schema.setting.c.event <= then))
+    rows = connection.execute(query.where(*_until(schema.setting, _then(connection))))
     return {row.name: row.value for row in rows}
 
 
@@ -423,7 +423,7 @@ def entries_of(
     connection: sa.Connection, plug_ids: Collection[int], kinds: Iterable[str], in_force_only: bool = False
 ) -> pd.DataFrame:
     """All entries about these plugs with their events, in order of their numbers."""
-    frames = []
+    frames, then = [], _then(connection)
     for kind in kinds:
         table = schema.SHEET_TABLES[kind]
         if "plug_id" not in table.c:
@@ -456,8 +456,8 @@ def entries_of(
             )
             .join(schema.entry, schema.entry.c.id == table.c.id)
             .join(schema.event, schema.event.c.number == schema.entry.c.event)
-            .outerjoin(newer, newer.c.supersedes == schema.entry.c.id)
-            .where(table.c.plug_id.in_(sorted(plug_ids)))
+            .outerjoin(newer, sa.and_(newer.c.supersedes == schema.entry.c.id, *_until(newer, then)))
+            .where(table.c.plug_id.in_(sorted(plug_ids)), *_until(schema.entry, then))
         )
         if in_force_only:
             query = query.where(newer.c.id.is_(None))
@@ -506,8 +506,8 @@ def withdrawers_of(connection: sa.Connection, plug_ids: Collection[int]) -> dict
         about = sa.select(table.c.id, table.c.plug_id).where(
             table.c.id.in_(sorted(by)), table.c.plug_id.in_(sorted(plug_ids))
         )
-        for number, plug in connection.execute(about).tuples():
-            found.setdefault(plug, set()).add(name_key(by[number]))
+        for row in connection.execute(about):
+            found.setdefault(row.plug_id, set()).add(name_key(by[row.id]))
     return found
 
 

@@ -37,7 +37,7 @@ def approve(
     entries = life.entries_of_plugs(connection, list(plug_ids), in_force_only=True)
     by = measured_by(entries)
     withdrew = store.withdrawers_of(connection, plug_ids)
-    released = frozen.released_words(connection, results, blocked)
+    released = frozen.covering_releases(connection, results, blocked)
     done = _approved_already(connection, plug_ids, results)
     there, key = set(valued["plug_id"]), store.name_key(person)
     problems: list[Problem] = []

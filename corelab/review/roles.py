@@ -66,6 +66,8 @@ def secret_of(password: str) -> str:
 
     if len(password) < LEAST_CHARACTERS:
         raise Usage(f"A password has at least {LEAST_CHARACTERS} characters.")
+    if any("\ud800" <= character <= "\udfff" for character in password):
+        raise Usage("A password is text in UTF-8, and these bytes are none: type it again.")
     return PasswordHasher().hash(password)
 
 
@@ -82,7 +84,7 @@ def check_password(person: str, secret: str, password: str) -> None:
 
     try:
         PasswordHasher().verify(secret, password)
-    except (Argon2Error, InvalidHashError) as wrong:
+    except (Argon2Error, InvalidHashError, UnicodeEncodeError) as wrong:
         raise Refused(
             [
                 Problem(

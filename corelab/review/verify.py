@@ -68,6 +68,10 @@ def verify(connection: sa.Connection, seal: str = "") -> Verified:
 def _file_faults(connection: sa.Connection) -> list[str]:
     strangers = sorted(set(sa.inspect(connection).get_table_names()) - migrate.own_tables())
     faults = [f"the table {name} is not the program's" for name in strangers]
+    versions = connection.exec_driver_sql("SELECT version_num FROM alembic_version").scalars().all()
+    faults += [
+        f"the schema {v} in alembic_version is not the program's" for v in versions if v != schema.SCHEMA
+    ]
     if connection.dialect.name != "sqlite":
         return faults
     for (said,) in connection.exec_driver_sql("PRAGMA integrity_check(20)"):

@@ -1,6 +1,7 @@
 """A loader under fire: damaged sheets are refused in words or taken, and the record stays whole.
 
-Mutations are drawn from fixed seeds, so that a failure can be repeated.
+Mutations are drawn from fixed seeds, so that a failure can be repeated. With CORELAB_CAMPAIGN=full there are
+10,000 of them, and what they took is printed at the end.
 """
 
 from __future__ import annotations
@@ -8,9 +9,11 @@ from __future__ import annotations
 import io
 import random
 import shutil
+import sys
 import time
 import zipfile
-from collections.abc import Iterator
+from collections import Counter
+from collections.abc import Callable, Iterator
 from datetime import datetime
 from pathlib import Path
 from typing import Any
@@ -23,9 +26,9 @@ from openpyxl import load_workbook
 from corelab import open_lab
 from corelab.errors import Refused
 from corelab.lab import Lab
-from corelab.records import history
 
-SECONDS = 6.0  # for one load; the demo lab takes about half a second
+SECONDS = 10.0  # promised for one load
+MEGABYTES = 1000.0  # promised for the process
 
 REGISTERS = ("registers.xlsx", "01 core runs.csv", "QB-1 core.xlsx", "QB-1 sidewall.xlsx", "03 plugs.csv")
 NASTY: tuple[Any, ...] = (
@@ -42,6 +45,30 @@ NASTY_CELLS: tuple[Any, ...] = (
     False, None,
     datetime(2026, 3, 14), datetime(1899, 12, 31), datetime(9999, 12, 31, 23, 59, 59), "=1/0", "='no tab'!A1",
 )  # fmt: skip
+
+
+Campaign = Callable[[int, int], int]
+TAKEN = Counter[str]()
+WORST = {"seconds": 0.0}
+
+
+def peak_megabytes() -> float:
+    import resource
+
+    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+
+
+@pytest.fixture(scope="module", autouse=True)
+def measured() -> Iterator[None]:
+    """No load makes the process larger than promised; what all of them took is told."""
+    if sys.platform != "linux":
+        yield
+        return
+    before = peak_megabytes()
+    yield
+    after = peak_megabytes()
+    print(f"\n{dict(TAKEN)}; slowest load {WORST['seconds']:.2f} s; peak memory {after:.0f} MB")
+    assert after < max(MEGABYTES, before + 1)
 
 
 @pytest.fixture(scope="module")
@@ -69,7 +96,10 @@ def under_fire(lab: Lab, path: Path, what: str, **how: Any) -> bool:
         lab.load([path], **how)
     except Refused as fault:
         refusal = fault
-    assert time.perf_counter() - began < SECONDS, what
+    seconds = time.perf_counter() - began
+    assert seconds < SECONDS, what
+    WORST["seconds"] = max(WORST["seconds"], seconds)
+    TAKEN["taken" if refusal is None else "refused"] += 1
     if refusal is None:
         return True
     assert lab.seal() == seal, what
@@ -81,9 +111,7 @@ def under_fire(lab: Lab, path: Path, what: str, **how: Any) -> bool:
 
 
 def whole(lab: Lab) -> None:
-    with lab._reading() as connection:
-        assert history.chain_faults(connection) == []
-    assert lab.recompute(check=True).empty
+    assert lab.verify().faults == []
     for well in lab.well_list()["well"]:
         lab.interval(well, with_uncertainty=True)
 
@@ -121,7 +149,9 @@ def mutated_lines(text: str, luck: random.Random) -> tuple[str, str]:
     "11 immersion", "12 not measured",
     "13 gas permeability", "14 reported permeability", "15 core gamma",
 ])  # fmt: skip
-def test_csv_sheets_with_changed_cells(fresh: Lab, demo_folder: Path, tmp_path: Path, name: str) -> None:
+def test_csv_sheets_with_changed_cells(
+    fresh: Lab, demo_folder: Path, tmp_path: Path, campaign: Campaign, name: str
+) -> None:
     luck = random.Random(name)
     text = (demo_folder / "bench" / f"{name}.csv").read_text(encoding="utf-8-sig")
     lines = text.splitlines()
@@ -129,7 +159,7 @@ def test_csv_sheets_with_changed_cells(fresh: Lab, demo_folder: Path, tmp_path: 
     path = tmp_path / f"{name}.csv"
     path.write_text(text, encoding="utf-8")
     assert under_fire(fresh, path, "as it was")
-    for number in range(24):
+    for number in range(campaign(24, 420)):
         changed, what = mutated_lines(text, luck)
         path.write_text(changed, encoding="utf-8", newline="")
         how = {"reason": "again"} if number % 2 else {}
@@ -138,15 +168,21 @@ def test_csv_sheets_with_changed_cells(fresh: Lab, demo_folder: Path, tmp_path: 
 
 
 @pytest.mark.parametrize("name", ["QB-1 volumes", "QB-1 flow", "QB-1 sidewall", "registers", "porosimeters"])
-def test_workbooks_with_changed_cells(fresh: Lab, demo_folder: Path, tmp_path: Path, name: str) -> None:
+def test_workbooks_with_changed_cells(
+    fresh: Lab, demo_folder: Path, tmp_path: Path, campaign: Campaign, name: str
+) -> None:
     luck = random.Random(name)
     path = tmp_path / f"{name}.xlsx"
-    for number in range(8):
-        book = load_workbook(demo_folder / "bench" / f"{name}.xlsx")
+    book = load_workbook(demo_folder / "bench" / f"{name}.xlsx")
+    for tab in book.worksheets:
+        tab.delete_rows(12, tab.max_row)
+    book.save(path)
+    short = path.read_bytes()
+    for number in range(campaign(8, 360)):
+        book = load_workbook(io.BytesIO(short))
         done = []
         for _ in range(luck.choice((1, 2, 5))):
             tab = luck.choice(book.worksheets)
-            tab.delete_rows(12, tab.max_row)
             row = luck.randrange(1, tab.max_row + 1) if luck.random() < 0.8 else 1
             cell = tab.cell(row, luck.randrange(1, tab.max_column + 1))
             value = luck.choice(NASTY_CELLS)
@@ -161,14 +197,16 @@ def test_workbooks_with_changed_cells(fresh: Lab, demo_folder: Path, tmp_path: P
     whole(fresh)
 
 
-def test_workbooks_with_changed_bytes(fresh: Lab, demo_folder: Path, tmp_path: Path) -> None:
+def test_workbooks_with_changed_bytes(
+    fresh: Lab, demo_folder: Path, tmp_path: Path, campaign: Campaign
+) -> None:
     """In the packed file, and in its parts before they are packed again."""
     luck = random.Random(7)
     whole_file = (demo_folder / "bench" / "porosimeters.xlsx").read_bytes()
     with zipfile.ZipFile(io.BytesIO(whole_file)) as package:
         parts = {name: package.read(name) for name in package.namelist()}
     path = tmp_path / "bench.xlsx"
-    for number in range(120):
+    for number in range(campaign(120, 1900)):
         if number % 3 == 0:
             data = bytearray(whole_file)
             for _ in range(luck.choice((1, 3, 30))):

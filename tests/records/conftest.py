@@ -96,6 +96,8 @@ def fill(lab: Lab) -> None:
         }
         sent |= {"request": "{}", "shown": "{}", "content": b"a,b\r\n", "content_digest": "1" * 64}
         change.rows(schema.export, [sent])
+        entitled = {"id": 1, "name": "A partner", "wells": "[]", "columns": "[]", "units": "[]"}
+        change.rows(schema.partner, [entitled])
         change.close(person=person, command="decide", program_version="0", detail={})
 
 
