@@ -164,8 +164,9 @@ def weighted_quantiles(values: ArrayLike, weights: ArrayLike, shares: ArrayLike)
     x, w = np.asarray(values, dtype=np.float64), np.asarray(weights, dtype=np.float64)
     order = np.argsort(x, kind="stable")
     middle = np.cumsum(w[order]) - w[order] / 2.0
-    q = np.asarray(shares, dtype=np.float64)
-    return np.asarray(np.interp(middle[0] + q * (middle[-1] - middle[0]), middle, x[order]))
+    if x.size > 1:  # from exactly 0 to exactly 1, so that the ends are the extremes to the last bit
+        middle = (middle - middle[0]) / (middle[-1] - middle[0])
+    return np.asarray(np.interp(np.asarray(shares, dtype=np.float64), middle, x[order]))
 
 
 #: As many places are drawn at once as fit in the processor's memory.
