@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -25,6 +26,7 @@ Array = NDArray[np.float64]
 GROUPINGS = ("facies", "run", "lithology", "orientation")
 ALL, UNSTATED = "all", "not stated"
 CONVENTION = "regression"
+_ACROSS = "vertical or oblique (name the orientation in --where, or use --by orientation)"
 #: What may be left out as suspect when asked, and what it means.
 SUSPECT = {
     "crushed": "crush likelihood likely, or judged crushed",
@@ -32,6 +34,10 @@ SUSPECT = {
     "flagged": "a reading asks for a second look, or an instrument is in doubt",
 }
 WEIGHTS = {"count": "every plug alike", "length": "the length that each plug stands for"}
+LENGTH_RULE = (
+    "half the way to each neighbour in its run, to the end of the recovered core, on either side no more "
+    "than three times half the usual spacing; a sidewall plug for no more than 0.3048 m"
+)
 QUANTILES = (0.1, 0.25, 0.5, 0.75, 0.9)
 RESAMPLES, SEED = 1000, 20261201
 #: Two plugs closer than this are of one sample point: common practice.
@@ -40,8 +46,11 @@ _SAME_POINT_M = 0.15
 _SIDEWALL_M = 0.3048
 _CUT_FACTORS = (0.5, 0.75, 1.0, 1.25, 1.5)
 _K_CUT_FACTORS = (0.1, 0.3, 1.0, 3.0, 10.0)
+_CUT_NAMES = ("porosity", "permeability", "water saturation")
+_CUT_HEADINGS = ("porosity [v/v]", "klinkenberg permeability [mD]", "water saturation [v/v]")
 _PHI, _K, _SW = "porosity [v/v]", "klinkenberg permeability [mD]", "water saturation [v/v]"
 _BELOW = "klinkenberg permeability below limit"
+_ABOVE = "klinkenberg permeability above limit"
 _BROKEN = ("cracked", "powdered", "crumbled", "disked")
 
 
@@ -95,41 +104,29 @@ def summary(
     for word in leave_out:
         if word not in SUSPECT:
             raise Usage(f"--leave-out is one of {', '.join(SUSPECT)}; found {quoted(word)}.")
-    stored = store.settings(connection)
-    chosen = _cuts(stored, cuts or {})
-    whole = select.interval(connection, identities, well, filters)
-    frame = _prepared(connection, identities, well, whole)
-    frame, left_out, across = _usable(frame, filters, by)
-    suspects = {word: _suspect(frame, word) for word in leave_out}
-    doubtful = np.logical_or.reduce([*suspects.values(), np.zeros(len(frame), dtype=np.bool_)])
-    for word, mask in suspects.items():
-        if mask.any():
-            left_out[f"{word}: {SUSPECT[word]}"] = int(mask.sum())
-    kept = frame[~doubtful]
-    if not len(kept):
-        why = "; ".join(f"{count} {reason}" for reason, count in left_out.items())
+    chosen = _cuts(store.settings(connection), cuts or {})
+    frame = _prepared(connection, identities, well, select.interval(connection, identities, well, filters))
+    frame["why"] = _why(frame, filters, by, leave_out)
+    frame["length_m"] = _lengths(connection, identities, well, filters, frame, leave_out)
+    if not (frame["why"] == "").any():
+        why = "; ".join(f"{count} {reason}" for reason, count in _counted(frame["why"]).items())
         raise NotFound(f"No plug of {quoted(well)} is left to summarise" + (f" ({why})." if why else "."))
-    columns = {"": None, **{g: g for g in GROUPINGS}}[by]
+    column = by or None
+    vertical = _across(frame, leave_out)
     made = []
-    for name, part, all_of in _groups(kept, frame, columns):
-        beside = across if columns in (None, "orientation") else across[_stated(across, columns) == name]
+    for name, every in _groups(frame, column):
+        part = every[every["why"] == ""]
+        beside = vertical if column in (None, "orientation") else vertical[_stated(vertical, column) == name]
         record = _record(name, part, beside, weights, chosen)
-        record["left out"] = {
-            "plugs": int(sum(left_out.values())),
-            "why": left_out,
-            "difference": _difference(part, all_of) if len(all_of) > len(part) else None,
-        }
+        record["left out"] = _left_out(every, record, leave_out, weights)
         made.append(record)
     return made
 
 
-def _groups(
-    kept: pd.DataFrame, frame: pd.DataFrame, column: str | None
-) -> list[tuple[str, pd.DataFrame, pd.DataFrame]]:
+def _groups(frame: pd.DataFrame, column: str | None) -> list[tuple[str, pd.DataFrame]]:
     if column is None:
-        return [(ALL, kept, frame)]
-    every = _stated(frame, column)
-    return [(str(n), part, frame[every == n]) for n, part in kept.groupby(_stated(kept, column), sort=False)]
+        return [(ALL, frame)]
+    return [(str(name), part) for name, part in frame.groupby(_stated(frame, column), sort=False)]
 
 
 def _stated(frame: pd.DataFrame, column: str) -> pd.Series:
@@ -137,12 +134,20 @@ def _stated(frame: pd.DataFrame, column: str) -> pd.Series:
 
 
 def _cuts(stored: Mapping[str, str], given: Mapping[str, float | None]) -> Cuts:
+    for name in given:
+        if name not in _CUT_NAMES:
+            raise Usage(f"There is a cut-off of {', '.join(_CUT_NAMES)}; found {quoted(name)}.")
     values = []
-    for name in ("porosity", "permeability", "water saturation"):
+    for name in _CUT_NAMES:
         typed = given.get(name)
-        if typed is not None and not typed >= 0:
-            raise Usage(f"A cut-off is a number not below zero; found {typed} for {name}.")
-        values.append(lab_settings.number(stored, f"{name} cut-off") if typed is None else float(typed))
+        if typed is None:
+            values.append(lab_settings.number(stored, f"{name} cut-off"))
+            continue
+        if name == "permeability" and not (math.isfinite(typed) and typed >= 0):
+            raise Usage(f"The permeability cut-off is a number of mD, not below zero; found {typed}.")
+        if name != "permeability" and not 0 <= typed <= 1:
+            raise Usage(f"The {name} cut-off is a fraction from 0 to 1, such as 0.15; found {typed}.")
+        values.append(float(typed))
     return Cuts(*values)
 
 
@@ -177,36 +182,75 @@ def _prepared(
         companion=[companion.get(k, "") for k in keys],
         broken=keys.isin(broken),
         below=frame["flags"].str.contains(_BELOW, regex=False),
+        above=frame["flags"].str.contains(_ABOVE, regex=False),
+        texture=frame["permeability basis"] == "texture",
+        **{_K: frame[_K].mask(frame["permeability basis"] == "texture")},
     )
 
 
-def _usable(
-    frame: pd.DataFrame, filters: select.Filters, by: str
-) -> tuple[pd.DataFrame, dict[str, int], pd.DataFrame]:
-    """The plugs to summarise, how many were left out and why, and those across the layers for ratios."""
+def _why(frame: pd.DataFrame, filters: select.Filters, by: str, leave_out: Sequence[str]) -> pd.Series[str]:
+    """Why each plug is left out: the first reason that holds, empty where none does."""
     asked = conditions.parse(filters.where, select.COLUMNS) if filters.where.strip() else None
     named = asked is not None and "orientation" in conditions.named(asked)
     across = frame["orientation"].isin(["vertical", "oblique"])
-    by_texture = frame["permeability basis"] == "texture"
-    vertical = frame[(frame["orientation"] == "vertical") & ~frame["duplicate"] & ~by_texture]
     reasons = {
         "duplicate of another plug": frame["duplicate"],
-        "vertical or oblique (name the orientation in --where, or use --by orientation)": across
-        & (not named and by != "orientation"),
+        _ACROSS: across & (not named and by != "orientation"),
+        **{f"{word}: {SUSPECT[word]}": _suspect(frame, word) for word in leave_out},
     }
-    keep = np.ones(len(frame), dtype=np.bool_)
-    left_out: dict[str, int] = {}
-    for reason, mask in reasons.items():
-        out = keep & mask.to_numpy(dtype=np.bool_)
-        if out.any():
-            left_out[reason] = int(out.sum())
-        keep &= ~out
-    used = frame[keep].copy()
-    texture = by_texture[keep]
-    if texture.any():
-        left_out["permeability estimated from texture (the plug's porosity stays)"] = int(texture.sum())
-        used.loc[texture, _K] = np.nan
-    return used, left_out, vertical
+    why = pd.Series("", index=frame.index)
+    for reason, holds in reasons.items():
+        why = why.mask((why == "").to_numpy() & np.asarray(holds, dtype=np.bool_), reason)
+    return why
+
+
+def _across(frame: pd.DataFrame, leave_out: Sequence[str]) -> pd.DataFrame:
+    """Vertical plugs to hold against horizontal ones: measured, neither repeats nor suspects left out."""
+    keep = (frame["orientation"] == "vertical") & ~frame["duplicate"] & ~_doubtful(frame, leave_out)
+    return frame.loc[keep]
+
+
+def _doubtful(frame: pd.DataFrame, leave_out: Sequence[str]) -> NDArray[np.bool_]:
+    doubtful = np.zeros(len(frame), dtype=np.bool_)
+    for word in leave_out:
+        doubtful |= _suspect(frame, word)
+    return doubtful
+
+
+def _counted(why: pd.Series[str]) -> dict[str, int]:
+    return {str(reason): int((why == reason).sum()) for reason in why[why != ""].unique()}
+
+
+def _left_out(
+    every: pd.DataFrame, record: Mapping[str, Any], leave_out: Sequence[str], weights: str
+) -> dict[str, Any]:
+    """How many plugs of a group are left out and why, and what leaving the suspects out changes."""
+    suspect = every["why"].isin([f"{word}: {SUSPECT[word]}" for word in leave_out])
+    difference = None
+    if suspect.any():
+        whole = every[(every["why"] == "") | suspect].sort_values("depth_m", kind="stable")
+        k = _Permeability.of(whole)
+        w = _weights(whole, weights)
+        phi = whole[_PHI].to_numpy(dtype=np.float64)
+        with_them = _means(phi, w, np.isfinite(phi)), _means(k.filled, w, k.positive)
+        difference = {
+            label: {
+                "plugs": plugs,
+                "porosity arithmetic mean": of_phi["arithmetic mean"],
+                "klinkenberg permeability arithmetic mean": of_k["arithmetic mean"],
+                "klinkenberg permeability geometric mean": of_k["geometric mean"],
+            }
+            for label, plugs, (of_phi, of_k) in (
+                ("without", record["plugs"], (record["porosity"], record["klinkenberg permeability"])),
+                ("with", len(whole), with_them),
+            )
+        }
+    return {
+        "plugs": int((every["why"] != "").sum()),
+        "why": _counted(every["why"]),
+        "permeability from texture": int(((every["why"] == "") & every["texture"]).sum()),
+        "difference": difference,
+    }
 
 
 def _suspect(frame: pd.DataFrame, word: str) -> NDArray[np.bool_]:
@@ -224,132 +268,216 @@ def _suspect(frame: pd.DataFrame, word: str) -> NDArray[np.bool_]:
 # -- one group --------------------------------------------------------------------------------------------
 
 
+@dataclass(frozen=True, slots=True)
+class _Permeability:
+    """Permeabilities (n,) [md], as stated and with those below detection filled in, and what is known."""
+
+    stated: Array
+    filled: Array
+    positive: NDArray[np.bool_]
+    below: NDArray[np.bool_]
+    above: NDArray[np.bool_]
+    method: str
+
+    @classmethod
+    def of(cls, part: pd.DataFrame) -> _Permeability:
+        k = part[_K].to_numpy(dtype=np.float64)
+        positive = np.isfinite(k) & (k > 0)
+        below = part["below"].to_numpy(dtype=np.bool_) & positive
+        above = part["above"].to_numpy(dtype=np.bool_) & positive
+        censored = averages.filled_below_detection(k[positive], below[positive])
+        filled = k.copy()
+        filled[positive] = censored.values
+        return cls(k, filled, positive, below, above, censored.method)
+
+
 def _record(
     name: str, part: pd.DataFrame, vertical: pd.DataFrame, weights: str, cuts: Cuts
 ) -> dict[str, Any]:
     part = part.sort_values("depth_m", kind="stable")
     unit = "ft" if "depth [ft]" in part.columns else "m"
     depth = part[f"depth [{unit}]"]
-    length = _lengths(part)
-    w = length if weights == "length" else np.ones(len(part))
+    length = part["length_m"].to_numpy(dtype=np.float64)
+    w = _weights(part, weights)
     phi = part[_PHI].to_numpy(dtype=np.float64)
-    k = part[_K].to_numpy(dtype=np.float64)
-    measured = np.isfinite(k)
-    zero = measured & (k <= 0)
-    positive = measured & ~zero
-    below = part["below"].to_numpy(dtype=np.bool_) & positive
-    filled = k.copy()
-    method = ""
-    if positive.any():
-        censored = averages.filled_below_detection(k[positive], below[positive])
-        filled[positive], method = censored.values, censored.method
-    both = positive & (phi > 0)
-    record: dict[str, Any] = {
+    k = _Permeability.of(part)
+    both = k.positive & (phi > 0) & (length > 0)
+    measured = vertical[_K].notna()
+    hidden = measured & (vertical["below"] | vertical["above"])
+    return {
         "group": name,
         "plugs": len(part),
         f"top depth [{unit}]": _finite(depth.min()),
         f"base depth [{unit}]": _finite(depth.max()),
-        "porosity": _statistics(phi, w, np.isfinite(phi)),
-        "klinkenberg permeability": _statistics(filled, w, positive)
+        "porosity": _statistics(phi, phi, w, np.isfinite(phi)),
+        "klinkenberg permeability": _statistics(k.filled, k.stated, w, k.positive)
         | {
-            "zero": int(zero.sum()),
-            "below detection": int(below.sum()),
-            "not measured": int((~measured).sum()),
-            "below detection taken as": method,
+            "zero": int((k.stated <= 0).sum()),
+            "below detection": int(k.below.sum()),
+            "above limit": int(k.above.sum()),
+            "not measured": int(np.isnan(k.stated).sum()),
+            "below detection taken as": k.method,
         },
-        **_heterogeneity(filled, phi, w, both),
-        **_vertical(part, vertical, filled, positive),
-        "flow capacity [mD.m]": float(np.sum(filled[both] * length[both])) if both.any() else None,
+        **_heterogeneity(k.filled, phi, w, k.positive, both & (w > 0), depth.to_numpy(), unit),
+        **_vertical(part, vertical[~hidden], k.stated, k.positive & ~k.below & ~k.above),
+        "vertical plugs below or above a limit, in no ratio": int(hidden.sum()),
+        "flow capacity [mD.m]": float(np.sum(k.filled[both] * length[both])) if both.any() else None,
         "storage capacity [m]": float(np.sum(phi[both] * length[both])) if both.any() else None,
-        **_net(part, phi, filled, length, cuts),
+        **_net(part, phi, k, length, cuts),
         "weights": f"{weights}: {WEIGHTS[weights]}",
         "length represented [m]": float(length.sum()),
+        "length rule": LENGTH_RULE,
+        "without depth": int(part["depth_m"].isna().sum()),
     }
-    return record
 
 
-def _lengths(part: pd.DataFrame) -> Array:
-    """What each plug stands for, run by run and laboratory by laboratory [m]."""
-    length = np.zeros(len(part))
-    depth = part["depth_m"].to_numpy(dtype=np.float64)
-    for _, places in part.reset_index(drop=True).groupby(["laboratory", "run"], sort=False).indices.items():
-        known = places[np.isfinite(depth[places])]
-        if len(known):
-            length[known] = averages.lengths_represented(depth[known])
-    shot = part["source"].str.contains("sidewall", regex=False).to_numpy(dtype=np.bool_)
-    length = np.where(shot, np.minimum(length, _SIDEWALL_M), length)
-    return np.where(length > 0, length, 1e-9)
+def _weights(part: pd.DataFrame, weights: str) -> Array:
+    if weights == "count":
+        return np.ones(len(part))
+    return part["length_m"].to_numpy(dtype=np.float64)
 
 
-def _statistics(values: Array, weights: Array, there: NDArray[np.bool_]) -> dict[str, Any]:
-    x, w = values[there], weights[there]
-    names = (
-        "count", "minimum", "maximum", "arithmetic mean", "geometric mean", "harmonic mean", "median",
-        "standard deviation", "coefficient of variation",
-    )  # fmt: skip
-    if not len(x):
-        return {"count": 0, **dict.fromkeys(names[1:])}
-    positive = bool((x > 0).all())
-    three = averages.means(x, w) if positive else None
-    mean = averages.weighted_mean(x, w)
-    sd = float(x.std(ddof=1)) if len(x) > 1 else None
-    cv = sd / mean if sd is not None and mean else None
-    made: dict[str, Any] = dict(
-        zip(
-            names,
-            (
-                len(x),
-                float(x.min()),
-                float(x.max()),
-                mean,
-                float(three.geometric) if three else None,
-                float(three.harmonic) if three else None,
-                float(np.median(x)),
-                sd,
-                cv,
-            ),
-            strict=True,
-        )
-    )
-    made["quantiles"] = {
-        f"P{q * 100:g}": float(v) for q, v in zip(QUANTILES, np.quantile(x, QUANTILES), strict=True)
-    }
-    made["power mean 1/3"] = float(averages.power_mean(x, w, 1 / 3)) if positive else None
-    made["confidence"] = _bootstrap(x, w, positive)
-    if cv is not None:
-        made["variation"] = heterogeneity.variation_class(cv)
-        made["samples for 20 %"] = heterogeneity.samples_needed(cv)
-        made["tolerance of the mean [%]"] = heterogeneity.tolerance_percent(cv, len(x))
+def _lengths(
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: str,
+    filters: select.Filters,
+    frame: pd.DataFrame,
+    leave_out: Sequence[str],
+) -> Array:
+    """What each plug stands for [m]: among all plugs of its run and direction, whichever are asked for.
+
+    So a plug stands for the same whether its facies, its porosity or the whole well is asked for. Repeats and
+    suspects left out stand for nothing: their neighbours do.
+    """
+    every = frame
+    if filters.where.strip() or filters.top is not None or filters.base is not None:
+        whole = replace(filters, where="", top=None, base=None)
+        every = _prepared(connection, identities, well, select.interval(connection, identities, well, whole))
+    every = every.loc[~every["duplicate"] & ~_doubtful(every, leave_out)]
+    ends = _ends_of_core(connection, identities, select.well_id(identities, well))
+    of_core = every["source"].isin(["core", "whole core"])
+    turned = every["orientation"].where(every["orientation"].isin(["vertical", "oblique"]), "horizontal")
+    places = list(zip(every["run"], of_core, every["depth basis"], turned, strict=True))
+    depth = every["depth_m"].to_numpy(dtype=np.float64)
+    of_place: dict[tuple[Any, ...], list[int]] = {}
+    for i, place in enumerate(places):
+        of_place.setdefault(place, []).append(i)
+    steps = [d for at in of_place.values() for d in np.diff(np.unique(depth[at][np.isfinite(depth[at])]))]
+    usual = float(np.median(steps)) if steps else float("nan")
+    length = np.zeros(len(every))
+    for (run, core, basis, _), at in of_place.items():
+        top, base = ends.get(store.name_key(run), _NO_ENDS) if core and basis == "driller" else _NO_ENDS
+        alone = np.unique(depth[at]).size < 2
+        length[at] = averages.lengths_represented(depth[at], top, base, usual if alone else float("nan"))
+        if not core:
+            length[at] = np.minimum(length[at], _SIDEWALL_M)
+    found = dict(zip(_names(every), length, strict=True))
+    return np.array([found.get(name, 0.0) for name in _names(frame)])
+
+
+_NO_ENDS = (float("nan"), float("nan"))
+
+
+def _names(frame: pd.DataFrame) -> list[tuple[str, str, float]]:
+    """What tells one row from another: other laboratories may have plugs of the same name."""
+    return list(zip(frame["laboratory"], frame["plug"], frame["depth_m"].fillna(-1.0), strict=True))
+
+
+def _ends_of_core(
+    connection: sa.Connection, identities: store.Identities, well: int
+) -> dict[str, tuple[float, float]]:
+    """Top and base [m] of what came out of each run: the loss lies at its base unless the record says top."""
+    numbers = [n for n, owner in identities.owners["run"].items() if owner == well]
+    made = {}
+    for row in store.in_force(connection, "core runs", numbers, by="run_id").to_dict("records"):
+        top, base = float(row["top_depth_m"]), float(row["base_depth_m"])
+        lost = max(base - top - float(row["recovered_length_m"]), 0.0)
+        ends = (top + lost, base) if row["loss_at"] == "top" else (top, base - lost)
+        made[store.name_key(identities.name("run", int(row["run_id"])))] = ends
     return made
 
 
-def _bootstrap(x: Array, w: Array, positive: bool) -> dict[str, list[float]] | None:
-    """95 % intervals of means and median by resampling plugs, always the same resamples."""
-    if len(x) < 3:
-        return None
-    drawn = np.random.default_rng(SEED).integers(0, len(x), size=(RESAMPLES, len(x)))
-    values, weights = x[drawn], w[drawn]
-    total = weights.sum(axis=1)
-    found = {"arithmetic mean": (values * weights).sum(axis=1) / total, "median": np.median(values, axis=1)}
-    if positive:
-        found["geometric mean"] = np.exp((np.log(x)[drawn] * weights).sum(axis=1) / total)
-    return {name: np.quantile(v, [0.025, 0.975]).tolist() for name, v in found.items()}
+_STATISTICS = (
+    "count", "minimum", "maximum", "arithmetic mean", "geometric mean", "harmonic mean", "median",
+    "standard deviation", "coefficient of variation",
+)  # fmt: skip
 
 
-def _heterogeneity(k: Array, phi: Array, w: Array, both: NDArray[np.bool_]) -> dict[str, Any]:
+def _means(values: Array, weights: Array, there: NDArray[np.bool_]) -> dict[str, Any]:
+    there = there & (weights > 0)
+    x, w = values[there], weights[there]
+    if not len(x):
+        return dict.fromkeys(("arithmetic mean", "geometric mean", "harmonic mean"))
+    three = averages.means(x, w) if (x > 0).all() else None
+    return {
+        "arithmetic mean": averages.weighted_mean(x, w),
+        "geometric mean": float(three.geometric) if three else None,
+        "harmonic mean": float(three.harmonic) if three else None,
+    }
+
+
+def _statistics(values: Array, stated: Array, weights: Array, there: NDArray[np.bool_]) -> dict[str, Any]:
+    """Means and spread by weight; the extremes are of what was stated, never of a value filled in."""
+    there = there & (weights > 0)
+    x, w = values[there], weights[there]
+    if not len(x):
+        return {"count": 0, **dict.fromkeys(_STATISTICS[1:])}
+    positive = bool((x > 0).all())
+    mean = averages.weighted_mean(x, w)
+    sd = _finite(averages.weighted_sd(x, w))
+    cv = sd / mean if sd is not None and mean else None
+    made: dict[str, Any] = {
+        "count": len(x),
+        "minimum": float(stated[there].min()),
+        "maximum": float(stated[there].max()),
+        **_means(values, weights, there),
+        "median": float(averages.weighted_quantiles(x, w, 0.5)),
+        "standard deviation": sd,
+        "coefficient of variation": cv,
+        "quantiles": {
+            f"P{q * 100:g}": float(v)
+            for q, v in zip(QUANTILES, averages.weighted_quantiles(x, w, QUANTILES), strict=True)
+        },
+        "power mean 1/3": float(averages.power_mean(x, w, 1 / 3)) if positive else None,
+        "confidence": None,
+    }
+    if len(x) >= 3:
+        intervals = averages.bootstrap_intervals(x, w, RESAMPLES, SEED)
+        made["confidence"] = {name: list(ends) for name, ends in intervals.items()}
+    if cv is not None:
+        made["variation"] = heterogeneity.variation_class(cv)
+        made["samples for 20 %"] = heterogeneity.samples_needed(cv)
+        made["tolerance of the mean [%]"] = heterogeneity.tolerance_percent(cv, averages.effective_count(w))
+    return made
+
+
+def _heterogeneity(
+    k: Array,
+    phi: Array,
+    w: Array,
+    positive: NDArray[np.bool_],
+    both: NDArray[np.bool_],
+    depth: Array,
+    unit: str,
+) -> dict[str, Any]:
     made: dict[str, Any] = {
         "dykstra-parsons coefficient": None,
-        "dykstra-parsons convention": heterogeneity.CONVENTIONS[CONVENTION],
+        "dykstra-parsons convention": heterogeneity.CONVENTIONS[CONVENTION] + ", every plug alike",
+        "dykstra-parsons confidence": None,
         "dykstra-parsons by other conventions": None,
         "lorenz coefficient": None,
         "lorenz by permeability": None,
         "stratigraphic lorenz": None,
     }
-    positive = k[np.isfinite(k) & (k > 0)]
-    if len(positive) >= 3:
-        made["dykstra-parsons coefficient"] = heterogeneity.dykstra_parsons(positive, CONVENTION)
+    known = k[positive]
+    if len(known) >= 3:
+        made["dykstra-parsons coefficient"] = heterogeneity.dykstra_parsons(known, CONVENTION)
+        made["dykstra-parsons confidence"] = list(
+            heterogeneity.dykstra_parsons_interval(known, RESAMPLES, SEED)
+        )
         made["dykstra-parsons by other conventions"] = {
-            words: _finite(heterogeneity.dykstra_parsons(positive, convention))
+            words: _finite(heterogeneity.dykstra_parsons(known, convention))
             for convention, words in heterogeneity.CONVENTIONS.items()
             if convention != CONVENTION
         }
@@ -360,6 +488,7 @@ def _heterogeneity(k: Array, phi: Array, w: Array, both: NDArray[np.bool_]) -> d
         curve = heterogeneity.stratigraphic_lorenz(*layers)
         made["stratigraphic lorenz"] = {
             "coefficient": float(curve.coefficient),
+            f"depth [{unit}]": [_finite(d) for d in depth[both]],
             "flow capacity share": curve.flow.tolist(),
             "storage capacity share": curve.storage.tolist(),
         }
@@ -424,52 +553,57 @@ def _sibling(plug: str) -> str:
     return f"{key[:-1]}h" if key.endswith("v") else ""
 
 
-def _net(part: pd.DataFrame, phi: Array, k: Array, length: Array, cuts: Cuts) -> dict[str, Any]:
-    known = np.isfinite(phi) & np.isfinite(k)
-    gross = float(length[known].sum())
+def _net(part: pd.DataFrame, phi: Array, k: _Permeability, length: Array, cuts: Cuts) -> dict[str, Any]:
+    """Net and pay as shares of the length of the plugs of which the cut-offs can be judged.
+
+    A plug below detection is no net rock where its limit lies at or below the cut-off; where the limit lies
+    above, nobody knows.
+    """
     sw = part[_SW].to_numpy(dtype=np.float64)
 
-    def share(least_phi: float, least_k: float) -> float | None:
-        net = known & (phi >= least_phi) & (k >= least_k)
-        return float(length[net].sum() / gross) if gross > 0 else None
+    def shares(cut: Cuts) -> dict[str, float | None]:
+        hidden = (k.below & (k.stated > cut.permeability_md)) | (k.above & (k.stated < cut.permeability_md))
+        known = np.isfinite(phi) & k.positive & ~hidden
+        net = known & ~k.below & (phi >= cut.porosity_frac) & (k.stated >= cut.permeability_md)
+        wet = known & np.isfinite(sw)
+        gross, judged = float(length[known].sum()), float(length[wet].sum())
+        pay = net & wet & (sw <= cut.water_saturation_frac)
+        return {
+            "net to gross [v/v]": float(length[net].sum()) / gross if gross > 0 else None,
+            "pay to gross [v/v]": float(length[pay].sum()) / judged if judged > 0 else None,
+            "net rests on": int((known & (length > 0)).sum()),
+            "pay rests on": int((wet & (length > 0)).sum()),
+        }
 
-    net = known & (phi >= cuts.porosity_frac) & (k >= cuts.permeability_md)
-    wet = known & np.isfinite(sw)
-    pay = net & wet & (sw <= cuts.water_saturation_frac)
+    def stated(cut: Cuts) -> dict[str, float]:
+        values = (cut.porosity_frac, cut.permeability_md, cut.water_saturation_frac)
+        return dict(zip(_CUT_HEADINGS, values, strict=True))
+
+    moved = [
+        *(replace(cuts, porosity_frac=min(cuts.porosity_frac * f, 1.0)) for f in _CUT_FACTORS),
+        *(replace(cuts, permeability_md=cuts.permeability_md * f) for f in _K_CUT_FACTORS if f != 1.0),
+        *(
+            replace(cuts, water_saturation_frac=min(cuts.water_saturation_frac * f, 1.0))
+            for f in _CUT_FACTORS
+            if f != 1.0
+        ),
+    ]
+    found = shares(cuts)
+    outcomes = ("net to gross [v/v]", "pay to gross [v/v]")
     return {
-        "net to gross [v/v]": share(cuts.porosity_frac, cuts.permeability_md),
-        "cut-offs": {
-            "porosity [v/v]": cuts.porosity_frac,
-            "klinkenberg permeability [mD]": cuts.permeability_md,
-            "water saturation [v/v]": cuts.water_saturation_frac,
-        },
+        "net to gross [v/v]": found["net to gross [v/v]"],
+        "cut-offs": stated(cuts),
         "net to gross sensitivity": [
             {
-                "porosity [v/v]": cuts.porosity_frac * f,
-                "klinkenberg permeability [mD]": cuts.permeability_md * g,
-                "net to gross [v/v]": share(cuts.porosity_frac * f, cuts.permeability_md * g),
+                **stated(cut),
+                **{name: value for name, value in shares(cut).items() if name in outcomes},
             }
-            for f in _CUT_FACTORS
-            for g in _K_CUT_FACTORS
-            if f == 1.0 or g == 1.0
+            for cut in moved
         ],
-        "pay to gross [v/v]": float(length[pay].sum() / length[wet].sum()) if wet.any() else None,
-        "pay rests on": int(wet.sum()),
+        "net rests on": found["net rests on"],
+        "pay to gross [v/v]": found["pay to gross [v/v]"],
+        "pay rests on": found["pay rests on"],
     }
-
-
-def _difference(part: pd.DataFrame, whole: pd.DataFrame) -> dict[str, Any]:
-    """What leaving plugs out does to the main averages: with them, without them."""
-    made: dict[str, Any] = {}
-    for label, frame in (("without", part), ("with", whole)):
-        phi = frame[_PHI].dropna()
-        k = frame.loc[frame[_K] > 0, _K]
-        made[label] = {
-            "plugs": len(frame),
-            "porosity arithmetic mean": _finite(phi.mean()) if len(phi) else None,
-            "klinkenberg permeability geometric mean": _finite(np.exp(np.log(k).mean())) if len(k) else None,
-        }
-    return made
 
 
 def _finite(value: Any) -> float | None:

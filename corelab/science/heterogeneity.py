@@ -7,6 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike
 
+from corelab.errors import Impossible
+from corelab.science.averages import resamples
 from corelab.science.formula import Array, Formula, Symbol, not_negative, positive, refuse
 
 CONVENTIONS = {
@@ -29,11 +31,18 @@ def dykstra_parsons(permeability_md: ArrayLike, convention: str = "regression") 
     convention
         One of `CONVENTIONS`.
 
+    Raises
+    ------
+    Impossible
+        If a permeability is not above zero, fewer than three are there, or the convention is not known.
+
     References
     ----------
     Dykstra & Parsons 1950, The prediction of oil recovery by waterflood; Tiab & Donaldson 2004, Petrophysics,
     2nd ed., p. 191 (definition), p. 199 (table of the share strictly greater).
     """
+    if convention not in CONVENTIONS:
+        raise Impossible(f"convention: found {convention!r}; wanted one of {', '.join(CONVENTIONS)}")
     from scipy import stats
 
     k = np.asarray(permeability_md, dtype=np.float64)
@@ -59,6 +68,27 @@ def dykstra_parsons(permeability_md: ArrayLike, convention: str = "regression") 
     centre = np.average(z, weights=weight)
     slope = np.sum(weight * (z - centre) * logs) / np.sum(weight * (z - centre) ** 2)
     return float(1.0 - np.exp(slope))
+
+
+def dykstra_parsons_interval(
+    permeability_md: ArrayLike, count: int, seed: int, confidence: float = 0.95
+) -> tuple[float, float]:
+    """Interval of the coefficient by regression, from drawing the permeabilities anew.
+
+    References
+    ----------
+    Efron & Tibshirani 1993, An Introduction to the Bootstrap, ch. 13 (percentile interval; from memory).
+    """
+    from scipy import stats
+
+    logs = np.log(np.sort(positive("permeability_md", permeability_md)))
+    n = logs.size
+    refuse(n < 3, "permeability_md", float(n), "three permeabilities or more")
+    z = stats.norm.ppf(np.arange(1, n + 1) / (n + 1))
+    spread = np.concatenate([logs[rows] @ z for rows in resamples(n, count, seed)]) / np.sum(z * z)
+    tail = (1.0 - confidence) / 2.0
+    low, high = np.quantile(1.0 - np.exp(-spread), [tail, 1.0 - tail])
+    return float(low), float(high)
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,7 +204,7 @@ def samples_needed(coefficient_of_variation: float) -> float:
     return (10.0 * coefficient_of_variation) ** 2
 
 
-def tolerance_percent(coefficient_of_variation: float, samples: int) -> float:
+def tolerance_percent(coefficient_of_variation: float, samples: float) -> float:
     """By how much the arithmetic mean of so many samples may be off at 95 % [%]: 200 Cv/sqrt(n).
 
     References

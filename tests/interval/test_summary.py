@@ -129,11 +129,149 @@ def test_net_to_gross_moves_with_its_cut_offs(stocked: Lab):
     assert len(set(shares)) > 1
 
 
-def test_length_weights_change_the_means_and_are_named(stocked: Lab):
-    (record,) = stocked.summary("W-1", weights="length")
+@pytest.fixture
+def uneven(lab: Lab, write_sheet: Callable[..., Path]) -> Lab:
+    """A run of 10 m of which 6 m came out, plugs 0.2, 0.2, 1, 0.2 m apart, and their vertical companions; two
+    cracked, one of them vertical; a fifth horizontal plug above the reach of the instrument."""
+    depths = [1000.1, 1000.3, 1000.5, 1001.5, 1001.7]
+    facies = ["sand", "silt", "sand", "silt", "sand"]
+    along, across = ["10", "20", "<0.5", "40", ">5000"], ["5", "<0.01", "1", "4", "9"]
+    plugs = [
+        f"W-2,{i}H,core,A,{d},horizontal,,{f}" for i, (d, f) in enumerate(zip(depths, facies, strict=True))
+    ]
+    plugs += [f"W-2,{i}V,core,A,{d},vertical,{i}H,{facies[i]}" for i, d in enumerate(depths)]
+    names = [row.split(",")[1] for row in plugs]
+    k = [f"W-2,{i}H,P1,{v}" for i, v in enumerate(along)] + [f"W-2,{i}V,P1,{v}" for i, v in enumerate(across)]
+    lab.load(
+        [
+            write_sheet("wells", "well,depth unit", "W-2,m"),
+            write_sheet(
+                "core runs", "well,run,top depth [m],base depth [m],recovered length [m]", "W-2,A,1000,1010,6"
+            ),
+            write_sheet("plugs", "well,plug,from,run,depth [m],orientation,companion of,facies", *plugs),
+            write_sheet("reported permeability", "well,plug,permeameter,klinkenberg permeability [mD]", *k),
+            write_sheet(
+                "dimensions", "well,plug,length 1 [mm],diameter 1 [mm]", *(f"W-2,{p},50,38" for p in names)
+            ),
+            write_sheet(
+                "grain volume",
+                "well,plug,instrument,grain volume [cm3]",
+                *(f"W-2,{p},G,45.363" for p in names),
+            ),
+            write_sheet(
+                "descriptions",
+                "well,plug,lithology,condition",
+                "W-2,3H,sandstone,cracked",
+                "W-2,0V,sandstone,cracked",
+            ),
+        ]
+    )
+    return lab
+
+
+def test_length_weights_are_worked_out_by_hand(uneven: Lab):
+    """Lengths 0.2 (to the top of the core), 0.2, 0.1 + 0.3, 0.3 + 0.1, 0.2 m: a gap of 1 m is cut on both
+    sides at three times half the usual 0.2 m."""
+    (record,) = uneven.summary("W-2", where="klinkenberg permeability < 50", weights="length")
+    k = record["klinkenberg permeability"]
     assert record["weights"] == "length: the length that each plug stands for"
-    (count,) = stocked.summary("W-1")
-    assert count["weights"].startswith("count")
+    assert record["length represented [m]"] == pytest.approx(0.2 + 0.2 + 0.4 + 0.4)
+    x, w = np.array([10, 20, 40]), np.array([0.2, 0.2, 0.4])
+    filled = k["arithmetic mean"] * 1.2 - np.sum(w * x)  # what the plug below 0.5 mD adds
+    assert 0 < filled <= 0.5 * 0.4 + 1e-9
+    assert k["coefficient of variation"] == pytest.approx(k["standard deviation"] / k["arithmetic mean"])
+    (count,) = uneven.summary("W-2", where="klinkenberg permeability < 50")
+    assert count["weights"] == "count: every plug alike"
+    # the middles of the lengths lie at 0.2, 0.5, 0.7, 1.0 m of 1.2: P75 at 0.8, a third of the way to 40
+    assert k["quantiles"]["P75"] == pytest.approx(20 + 20 / 3)
+    assert count["klinkenberg permeability"]["quantiles"]["P75"] == pytest.approx(25)
+
+
+def test_a_plug_stands_for_the_same_length_whatever_is_asked_for(uneven: Lab):
+    (whole,) = uneven.summary("W-2")
+    parts = uneven.summary("W-2", by="facies")
+    assert whole["length represented [m]"] == pytest.approx(1.4)
+    for name in ("length represented [m]", "storage capacity [m]"):
+        assert sum(r[name] for r in parts) == pytest.approx(whole[name])
+    (upper,), (lower,) = uneven.summary("W-2", base=1001), uneven.summary("W-2", 1001)
+    assert upper["length represented [m]"] + lower["length represented [m]"] == pytest.approx(1.4)
+
+
+def test_values_at_limits_stay_what_they_are(uneven: Lab):
+    (record,) = uneven.summary("W-2")
+    k = record["klinkenberg permeability"]
+    assert (k["count"], k["below detection"], k["above limit"], k["not measured"]) == (5, 1, 1, 0)
+    assert (k["minimum"], k["maximum"]) == (0.5, 5000)  # as stated, not as filled in
+    assert k["below detection taken as"].startswith("estimated by regression on order statistics")
+
+
+def test_cut_offs_that_a_limit_cannot_tell_are_not_guessed(uneven: Lab):
+    (judged,) = uneven.summary("W-2", cuts={"permeability": 1.0})
+    assert judged["net rests on"] == 5
+    assert judged["net to gross [v/v]"] == pytest.approx((0.2 + 0.2 + 0.4 + 0.2) / 1.4)
+    (open_below,) = uneven.summary("W-2", cuts={"permeability": 0.1})  # below 0.5: above 0.1 or not?
+    assert open_below["net rests on"] == 4
+    assert open_below["net to gross [v/v]"] == pytest.approx(1.0)
+    (open_above,) = uneven.summary("W-2", cuts={"permeability": 6000.0})
+    assert open_above["net rests on"] == 4
+    assert open_above["net to gross [v/v]"] == 0.0
+
+
+def test_ratios_rest_on_measured_pairs_without_the_suspects(uneven: Lab):
+    (all_of,) = uneven.summary("W-2")  # 0: 5/10 and 3: 4/40; 1V below detection, 2H below, 4H above
+    assert all_of["vertical to horizontal pairs"] == 2
+    assert all_of["vertical to horizontal ratio"] == pytest.approx((0.5 * 0.1) ** 0.5)
+    assert all_of["vertical plugs below or above a limit, in no ratio"] == 1
+    (sound,) = uneven.summary("W-2", leave_out=["cracked"])
+    assert sound["vertical to horizontal pairs"] == 0
+
+
+def test_each_group_counts_its_own(uneven: Lab):
+    sand, silt = uneven.summary("W-2", by="facies", leave_out=["cracked", "cracked"])
+    assert (sand["group"], silt["group"]) == ("sand", "silt")
+    assert sand["left out"]["plugs"] == 3  # its vertical plugs
+    assert sand["left out"]["difference"] is None
+    assert sorted(silt["left out"]["why"].values()) == [1, 2]
+    assert silt["left out"]["plugs"] == 3
+    (before,) = [r for r in uneven.summary("W-2", by="facies") if r["group"] == "silt"]
+    found = silt["left out"]["difference"]
+    for label, record in (("without", silt), ("with", before)):
+        assert found[label]["plugs"] == record["plugs"]
+        mean = record["klinkenberg permeability"]["geometric mean"]
+        assert found[label]["klinkenberg permeability geometric mean"] == pytest.approx(mean)
+
+
+def test_a_group_of_which_all_is_left_out_is_still_named(uneven: Lab):
+    only = "plug = '3H' or plug = '4H'"
+    groups = {r["group"]: r for r in uneven.summary("W-2", by="facies", where=only, leave_out=["cracked"])}
+    assert groups["silt"]["plugs"] == 0
+    assert groups["silt"]["porosity"]["count"] == 0
+    assert groups["silt"]["left out"]["plugs"] == 1
+    with pytest.raises(NotFound, match="1 cracked"):
+        uneven.summary("W-2", where="plug = '3H'", leave_out=["cracked"])
+
+
+def test_the_stratigraphic_curve_has_its_depths(stocked: Lab):
+    (record,) = stocked.summary("W-1", where="facies = 'sand'")
+    curve = record["stratigraphic lorenz"]
+    assert curve["depth [m]"] == [1000 + 0.5 * i for i in range(14)]
+    assert curve["flow capacity share"][1:] == pytest.approx(np.cumsum(HBK5) / sum(HBK5))
+    assert curve["storage capacity share"] == pytest.approx(np.arange(15) / 14)
+
+
+def test_pay_moves_with_its_cut_offs(lab: Lab, demo_folder: Path):
+    lab.load([demo_folder / "bench"])
+    (record,) = lab.summary("QB-1", where="facies = 'channel sand'")
+    rows = record["net to gross sensitivity"]
+    base = record["cut-offs"]["water saturation [v/v]"]
+    wet = sorted(
+        (r for r in rows if r["water saturation [v/v]"] != base), key=lambda r: r["water saturation [v/v]"]
+    )
+    shares = [r["pay to gross [v/v]"] for r in wet]
+    assert len(wet) == 4
+    assert shares == sorted(shares)
+    assert shares[0] < shares[-1]
+    assert record["pay to gross [v/v]"] <= record["net to gross [v/v]"]
 
 
 @pytest.mark.parametrize(
@@ -142,7 +280,11 @@ def test_length_weights_change_the_means_and_are_named(stocked: Lab):
         ({"by": "colour"}, "--by is one of"),
         ({"weights": "mass"}, "--weights is one of"),
         ({"leave_out": ["odd"]}, "--leave-out is one of"),
-        ({"cuts": {"porosity": -1.0}}, "cut-off"),
+        ({"cuts": {"porosity": -1.0}}, "porosity cut-off is a fraction from 0 to 1"),
+        ({"cuts": {"porosity": 15.0}}, "porosity cut-off is a fraction from 0 to 1"),
+        ({"cuts": {"water saturation": float("nan")}}, "water saturation cut-off is a fraction"),
+        ({"cuts": {"permeability": float("inf")}}, "permeability cut-off is a number of mD"),
+        ({"cuts": {"permeabilty": 1.0}}, "There is a cut-off of porosity, permeability, water saturation"),
     ],
 )
 def test_wrong_options_are_named(stocked: Lab, options: dict[str, Any], said: str):

@@ -216,6 +216,7 @@ COLUMNS = {
     "flow-units": {"flow_zone_indicator_um": np.array([0.5, 0.6, 0.55, 0.48, 5.0, 4.6, 5.3, 4.8, 5.1])},
     "duan-factor": {"residuals_decades": np.array([-0.3, -0.1, 0.0, 0.1, 0.3])},
     "means": {"values": np.array([10.0, 50.0, 1000.0]), "weights": np.array([20.0, 15.0, 10.0])},
+    "log-normal-field": {"permeability_md": np.array([100.0, 50.0, 200.0])},
     "dykstra-parsons": {"permeability_md": np.array([100.0, 50.0, 20.0, 10.0, 5.0])},
     "lorenz": {
         "permeability_md": np.array([100.0, 50.0, 20.0]),
