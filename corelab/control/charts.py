@@ -269,8 +269,9 @@ def states(
         why = ""
         if open_:
             state = OUT_OF_CONTROL
-            last = part[part["bad"].astype(bool)].drop_duplicates(["standard_id", "result"], keep="last")
-            last = last[last["day"] > max(d.after for d in open_)]
+            bad = part[part["bad"].astype(bool)]
+            wrong = {r for r, own in part.groupby("result") if _days(own).iloc[-1:].any()}
+            last = bad[bad["result"].isin(wrong)].drop_duplicates(["standard_id", "result"], keep="last")
             why = "; ".join(f"{r['result']} on {r['day']}: {r['why']}" for r in last.to_dict("records"))
         if runs_out and on > runs_out:
             state = f"{state}, {OVERDUE}" if open_ else OVERDUE
