@@ -8,6 +8,7 @@ import tempfile
 from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
+from datetime import date
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -1146,14 +1147,25 @@ class Lab:
         found = controlled.doubts_of(connection, identities, store.settings(connection), plug_ids)
         return {plug: "; ".join(words) for plug, words in found.items()}
 
-    def control(self, instrument: str = "") -> dict[str, pd.DataFrame]:
+    def control(self, instrument: str = "", on: str = "") -> dict[str, pd.DataFrame]:
         """The state of each instrument, the charts of its check standards, its precision.
+
+        Parameters
+        ----------
+        instrument
+            Only this one; all where empty.
+        on
+            The state on this day, from the checks made until then; today, or on the day of the newest
+            check if that is later, where empty.
 
         Returns
         -------
         dict
-            `instruments`, `charts`, `checks` (one row an occasion), `precision`, `duplicates`.
+            `instruments`, `charts`, `checks` (one row an occasion), `precision`, `between instruments`, and
+            of all instruments also `standards` and `duplicates`.
         """
+        if on and not _is_day(on):
+            raise Usage(f"A day is written as 2026-03-14; found {quoted(on)}.")
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             if instrument and identities.find("instrument", instrument) is None:
@@ -1162,13 +1174,13 @@ class Lab:
                     f"There is no instrument {quoted(instrument)}; {did_you_mean(instrument, names)}"
                 )
             only = identities.find("instrument", instrument) if instrument else None
-            return controlled.shown(connection, identities, store.settings(connection), only)
+            return controlled.shown(connection, identities, store.settings(connection), only, on)
 
-    def write_control_charts(self, out: str | Path, instrument: str = "") -> Path:
+    def write_control_charts(self, out: str | Path, instrument: str = "", on: str = "") -> Path:
         """Draw the control charts into a page (.html) or a picture (.svg, .png)."""
         from corelab.reports.charts import control_charts, save
 
-        found = self.control(instrument)
+        found = self.control(instrument, on)
         save(control_charts(found["checks"]), Path(out))
         return Path(out)
 
@@ -1312,6 +1324,13 @@ def _filters(
     uniaxial: float | None = None,
 ) -> select.Filters:
     return select.Filters(top, base, depth, unit, where, stress, with_uncertainty, uniaxial)
+
+
+def _is_day(text: str) -> bool:
+    try:
+        return date.fromisoformat(text).isoformat() == text
+    except ValueError:
+        return False
 
 
 def _require_reason(reason: str, what: str) -> None:

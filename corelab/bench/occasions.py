@@ -9,8 +9,10 @@ Readings of the other sheets are those of the same day, else the newest before i
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import replace
+from bisect import bisect_right
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -18,43 +20,66 @@ import pandas as pd
 import sqlalchemy as sa
 
 from corelab import units
-from corelab.bench import gather, judge, reduce, uncertainty
-from corelab.bench.gather import Readings, Tray
+from corelab.bench import gather, reduce, uncertainty
+from corelab.bench.gather import Readings, Tray, Whole
 from corelab.bench.outcome import Outcome
+from corelab.control.instruments import Calibration
 from corelab.quantities import RESULTS
 from corelab.records import store
 
-#: Sheet -> the field that names the instrument it checks, and the results that it checks.
-CHECKS: Mapping[str, tuple[str, tuple[str, ...]]] = {
-    "grain volume": ("instrument_id", ("grain volume", "porosity", "grain density")),
-    "pore volume": ("instrument_id", ("pore volume",)),
+#: Sheet -> the field that names the instrument it checks, the results that it checks, and the sheets that
+#: would give them in another way.
+CHECKS: Mapping[str, tuple[str, tuple[str, ...], tuple[str, ...]]] = {
+    "grain volume": (
+        "instrument_id",
+        ("grain volume", "pore volume", "porosity", "grain density"),
+        ("pore volume", "distillation", "retort"),
+    ),
+    "pore volume": ("instrument_id", ("pore volume", "porosity"), ("grain volume", "masses", "retort")),
     "gas permeability": (
         "permeameter_id",
         ("gas permeability", "klinkenberg permeability", "slip factor"),
+        ("reported permeability",),
     ),
     "reported permeability": (
         "permeameter_id",
         ("gas permeability", "klinkenberg permeability", "slip factor"),
+        ("gas permeability",),
     ),
-    "immersion": ("balance_id", ("bulk volume",)),
-    "dimensions": ("caliper_id", ("bulk volume",)),
-    "masses": ("balance_id", ("dry mass", "bulk density")),
+    "immersion": ("balance_id", ("bulk volume",), ()),
+    "dimensions": ("caliper_id", ("bulk volume", "bulk density"), ("immersion",)),
+    "masses": ("balance_id", ("dry mass",), ()),
 }
 _SAME_STRESS_MPA, _SAME_STRESS_SHARE = 0.005, 0.005
+#: A gas permeability at another mean pressure than the certified one is another thing: assumed.
+_SAME_PRESSURE_SHARE = 0.05
 COLUMNS = [
     "standard_id", "instrument_id", "day", "result", "unit", "value", "u_value", "certified", "u_certified",
-    "valid_until",
+    "valid_until", "calibrated",
 ]  # fmt: skip
 
 
-def occasions(connection: sa.Connection, stored: Mapping[str, str]) -> pd.DataFrame:
+@dataclass(frozen=True, slots=True)
+class _Mark:
+    """One occasion."""
+
+    standard_id: int
+    instrument_id: int
+    day: str
+    kind: str
+
+
+def occasions(
+    connection: sa.Connection, stored: Mapping[str, str], calibrations: Sequence[Calibration]
+) -> pd.DataFrame:
     """Each certified result of each standard on each occasion, with its certificate; in order of days.
 
     Returns
     -------
     DataFrame
         `COLUMNS`: standard and instrument by their numbers, `value` and `certified` with their standard
-        uncertainties in `unit`.
+        uncertainties in `unit`; `calibrated` names the calibrations that served, so that a new one begins
+        a new chart.
     """
     certified = _certified(connection)
     if not certified:
@@ -69,16 +94,32 @@ def occasions(connection: sa.Connection, stored: Mapping[str, str]) -> pd.DataFr
         return pd.DataFrame(columns=COLUMNS)
     outcomes = reduce.reduce(split)
     uncertainty.add_uncertainties(split, outcomes)
-    judge.judge(split, outcomes)
     rows: list[dict[str, Any]] = []
     for one in certified:
         for outcome in outcomes:
             if outcome.quantity == one["result"]:
                 rows += _values(one, outcome, marks, outcomes, valid)
     frame = pd.DataFrame(rows, columns=COLUMNS)
+    served = _calibrations(split, marks, calibrations)
+    frame["calibrated"] = [served[int(p)] for p in frame["calibrated"]]
     return frame.sort_values(["day", "instrument_id", "standard_id", "result"], kind="stable").reset_index(
         drop=True
     )
+
+
+def _calibrations(tray: Tray, marks: list[_Mark], calibrations: Sequence[Calibration]) -> list[str]:
+    """For each occasion, the calibrations that served: of the register, and of the porosimeter itself."""
+    served = [
+        max((c.made_on for c in calibrations if c.instrument_id == m.instrument_id and c.made_on <= m.day),
+            default="")
+        for m in marks
+    ]  # fmt: skip
+    for kind in gather.EXPANSIONS:
+        for place, choice in zip(tray.readings[kind].at.tolist(), tray.choices(kind), strict=True):
+            if marks[place].kind == kind and isinstance(choice, int):
+                own = tray.calibration(choice)
+                served[place] = f"{served[place]} {own.date} {own.name}".strip()
+    return served
 
 
 def _certified(connection: sa.Connection) -> list[dict[str, Any]]:
@@ -99,70 +140,62 @@ def _certified(connection: sa.Connection) -> list[dict[str, Any]]:
     return made
 
 
-def _split(tray: Tray) -> tuple[list[tuple[int, int, str, str]], Tray]:
-    """A tray with one place an occasion: (standard, instrument, day, sheet) of each, and the tray."""
-    marks: list[tuple[int, int, str, str]] = []
-    places: list[int] = []
-    chosen: dict[str, list[np.ndarray[Any, Any]]] = {kind: [] for kind in tray.readings}
-    of_place = {
-        kind: [np.flatnonzero(r.at == place) for place in range(len(tray))]
-        for kind, r in tray.readings.items()
-    }
-    days = {
-        kind: np.array([str(d)[:10] for d in r.texts["measured_on"]], dtype=object)
-        for kind, r in tray.readings.items()
-        if "measured_on" in r.texts
-    }
-    for kind, (field, _) in CHECKS.items():
-        readings = tray.readings[kind]
-        instruments = np.nan_to_num(readings.numbers[field]).astype(np.intp)
-        for place in range(len(tray)):
-            own = of_place[kind][place]
-            for instrument, day in sorted({(int(instruments[i]), str(days[kind][i])) for i in own}):
-                if not instrument or not day:
-                    continue
-                for other, rows in of_place.items():
-                    found = rows[place]
-                    if other == kind:
-                        found = own[(instruments[own] == instrument) & (days[kind][own] == day)]
-                    elif other in days and len(found):
-                        found = _nearest(found, days[other], day)
-                    chosen[other].append(found)
-                marks.append((int(tray.plug_ids[place]), instrument, day, kind))
-                places.append(place)
+def _split(tray: Tray) -> tuple[list[_Mark], Tray]:
+    """The occasions, and a tray with one place for each."""
+    by_day = {kind: _by_day(readings) for kind, readings in tray.readings.items()}
+    marks: list[_Mark] = []
+    chosen: dict[str, list[Whole]] = {kind: [] for kind in tray.readings}
+    none = np.zeros(0, dtype=np.intp)
+    for kind, (field, _, others) in CHECKS.items():
+        instruments = np.nan_to_num(tray.readings[kind].numbers[field]).astype(np.intp)
+        for place, days in by_day[kind].items():
+            for day, rows in days.items():
+                for instrument in np.unique(instruments[rows]).tolist() if day else ():
+                    if not instrument:
+                        continue
+                    for other, of_place in by_day.items():
+                        if other == kind:
+                            found = rows[instruments[rows] == instrument]
+                        elif other in others or place not in of_place:
+                            found = none
+                        else:
+                            found = of_place[place][_nearest(list(of_place[place]), day)]
+                        chosen[other].append(found)
+                    marks.append(_Mark(int(tray.plug_ids[place]), int(instrument), day, kind))
     made = {}
     for kind, rows_of_kind in chosen.items():
-        index = np.concatenate(rows_of_kind).astype(np.intp) if rows_of_kind else np.zeros(0, dtype=np.intp)
+        index = np.concatenate([none, *rows_of_kind])
         at = np.repeat(np.arange(len(marks)), [len(r) for r in rows_of_kind]).astype(np.intp)
         old = tray.readings[kind]
         made[kind] = Readings(
             at, {n: v[index] for n, v in old.numbers.items()}, {n: v[index] for n, v in old.texts.items()}
         )
-    split = replace(
-        tray,
-        plug_ids=np.arange(len(marks), dtype=np.intp),
-        readings=made,
-        fingerprints=[""] * len(marks),
-        in_force={},
-        found={},
-    )
+    places = np.arange(len(marks), dtype=np.intp)
+    split = replace(tray, plug_ids=places, readings=made, fingerprints=[], in_force={}, found={})
     return marks, split
 
 
-def _nearest(rows: np.ndarray[Any, Any], days: np.ndarray[Any, Any], day: str) -> np.ndarray[Any, Any]:
-    """The rows of the same day, else of the newest day before it, else of the first after; undated all."""
-    own = days[rows]
-    before = [d for d in own if d and d <= day]
-    after = [d for d in own if d]
-    wanted = max(before) if before else min(after, default="")
-    chosen: np.ndarray[Any, Any] = rows[own == wanted]
-    return chosen
+def _by_day(readings: Readings) -> dict[int, dict[str, Whole]]:
+    """The rows of each place by day, in order of days; what has no day of measuring under an empty one."""
+    days = readings.texts.get("measured_on", np.full(len(readings), "", dtype=object))
+    rows: dict[int, dict[str, list[int]]] = defaultdict(lambda: defaultdict(list))
+    for row, (place, day) in enumerate(zip(readings.at.tolist(), days.tolist(), strict=True)):
+        rows[place][day[:10]].append(row)
+    return {
+        place: {day: np.array(found[day], dtype=np.intp) for day in sorted(found)}
+        for place, found in rows.items()
+    }
+
+
+def _nearest(days: list[str], day: str) -> str:
+    """The same day, else the newest before it, else the first after."""
+    return days[max(bisect_right(days, day) - 1, 0)]
 
 
 def _values(
     one: Mapping[str, Any],
     outcome: Outcome,
-    marks: list[tuple[int, int, str, str]],
+    marks: list[_Mark],
     outcomes: list[Outcome],
     valid: Mapping[int, str],
 ) -> list[dict[str, Any]]:
@@ -170,8 +203,8 @@ def _values(
     best: dict[int, tuple[float, int]] = {}
     pressures = _pressures(outcomes) if outcome.quantity == "gas permeability" else {}
     for i, place in enumerate(outcome.at.tolist()):
-        standard, _, _, kind = marks[place]
-        if standard != one["standard_id"] or outcome.quantity not in CHECKS[kind][1]:
+        mark = marks[place]
+        if mark.standard_id != one["standard_id"] or outcome.quantity not in CHECKS[mark.kind][1]:
             continue
         if np.isnan(outcome.value[i].real):
             continue
@@ -190,13 +223,15 @@ def _values(
         pressure = one["mean_pressure_kpa"]
         if pressure is not None and pressure == pressure:
             away = abs(pressures.get((place, stress, step), np.inf) - float(pressure))
+            if pressures and away > _SAME_PRESSURE_SHARE * float(pressure):
+                continue
         if place not in best or away < best[place][0]:
             best[place] = (away, i)
     return [
         {
             "standard_id": one["standard_id"],
-            "instrument_id": marks[place][1],
-            "day": marks[place][2],
+            "instrument_id": marks[place].instrument_id,
+            "day": marks[place].day,
             "result": outcome.quantity,
             "unit": one["shown"],
             "value": float(outcome.value[i].real),
@@ -204,6 +239,7 @@ def _values(
             "certified": one["value"],
             "u_certified": one["u"],
             "valid_until": valid.get(one["standard_id"], ""),
+            "calibrated": place,
         }
         for place, (_, i) in best.items()
     ]

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Any
 import typer
 
 from corelab.cli import show
+from corelab.control.charts import WORDS
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -19,7 +20,9 @@ _DECIMALS = {
 
 def print_control(found: dict[str, pd.DataFrame], *, charts_too: bool) -> None:
     """The state of instruments in a table; with `charts_too`, every chart check by check."""
-    for title in ("instruments", "charts", "precision", "duplicates"):
+    for title in (
+        "instruments", "standards", "charts", "precision", "between instruments", "duplicates",
+    ):  # fmt: skip
         frame = found.get(title)
         if frame is None or not len(frame):
             continue
@@ -31,25 +34,27 @@ def print_control(found: dict[str, pd.DataFrame], *, charts_too: bool) -> None:
         typer.echo("No check standard with a certified value was measured.")
         return
     if not charts_too:
-        bad = checks[~checks["good"].astype(bool)]
+        bad = checks[~checks["good"].astype(bool) & checks["why"].ne("")]
         for row in bad.to_dict("records")[-20:]:
             typer.echo(
                 f"{row['day']}  {row['instrument']}  {row['result']} of {row['standard']}: {row['why']}"
             )
         return
-    for (instrument, standard, result), part in checks.groupby(
-        ["instrument", "standard", "result"], sort=False
+    for (instrument, standard, result, _), part in checks.groupby(
+        ["instrument", "standard", "result", "calibrated"], sort=False
     ):
         last = part.iloc[-1]
         typer.echo(
             f"{instrument}: {result} of {standard} [{last['unit']}], centre {last['centre']:.6g}, limits "
             f"{last['lower']:.6g} to {last['upper']:.6g} (from {last['limits']}), certified "
-            f"{last['certified']:.6g}"
+            f"{last['certified']:.6g}" + (f"; calibrated {last['calibrated']}" if last["calibrated"] else "")
         )
         for row in part.to_dict("records"):
             mark = "" if row["good"] else f"  {row['why']}"
-            also = f"  (test {row['rules']})" if row["rules"] and row["good"] else ""
-            typer.echo(f"  {row['day']}  {row['value']:>11.6g}  {_line(row)}{mark}{also}")
+            looks = [WORDS[t] for t in row["rules"].split(", ") if t and WORDS[t] not in row["why"]]
+            also = f"  (worth a look: {'; '.join(looks)})" if looks else ""
+            line = f"  {row['day']}  {row['value']:>11.6g}  {_line(row)}{mark}{also}"
+            typer.echo(line.rstrip())
         typer.echo()
 
 

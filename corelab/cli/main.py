@@ -541,14 +541,17 @@ def control(
     charts: Annotated[
         Path | None, typer.Option("--charts", metavar="FILE", help="Draw them: .html, .svg or .png.")
     ] = None,
+    on: Annotated[
+        str, typer.Option("--on", metavar="DATE", help="The state on a day, such as 2026-03-14; else today.")
+    ] = "",
     form: TableOrJson = "table",
 ) -> None:
     """Whether instruments are in calibration and in control: state, charts, bias, precision."""
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
-        found = lab.control(instrument)
+        found = lab.control(instrument, on)
         if charts is not None:
-            lab.write_control_charts(charts, instrument)
+            lab.write_control_charts(charts, instrument, on)
             show.tell(f"Wrote {charts}.")
     if form == "json":
         show.print_json(
@@ -558,8 +561,8 @@ def control(
         from corelab.cli import controlled
 
         controlled.print_control(found, charts_too=bool(instrument))
-    states = found["instruments"]["state"]
-    if states.str.contains("out of control|overdue", regex=True).any():
+    wrong = "out of control|overdue|ran out"
+    if any(f["state"].str.contains(wrong).any() for f in found.values() if "state" in f):
         raise typer.Exit(1)
 
 

@@ -1,34 +1,54 @@
 """Control of instruments: charts of the check standards, and what they say of everything measured.
 
-A chart is of one instrument, one standard and one result. Its limits come from the first checks that agree
-with the certificate and are no outliers among themselves, up to `BASELINE`; with fewer than `FEWEST` from
-the certificate and the stated uncertainty. A check is good where none of the rules that call for action
-fires (`ACT_ON`: with all eight, one check in ninety of a sound instrument would be bad) and the value agrees
-with its certificate. After a check that is not good, everything measured on the instrument since the last
-good check is in doubt, until the next good one.
+A chart is of one instrument, one standard and one result, and begins anew at each calibration of the
+instrument, which may move it. Its limits come from the first checks that agree with the certificate and are
+no outliers among themselves, up to `BASELINE`; with fewer than `FEWEST`, or fewer than `FEWEST_DIFFERENT`
+different values (too coarsely read to tell how they scatter), from the certificate and the stated
+uncertainty. They allow for the few checks they rest on, so that one sound check in 370 lies beyond them, and
+one in about 170 is called bad by any of the tests that call for action (`ACT_ON` and `DRIFT`; with all of
+Nelson's it would be one in thirty). The other tests ask for a look.
+
+A check is bad where such a test fires or the value does not agree with its certificate; it is no check where
+the standard's own certificate had run out; else it is good. After a bad check of a result, everything
+measured on the instrument since the last good check of that result is in doubt, until the next good one. A
+good check vouches for its own day.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
 
+from corelab.control.instruments import Calibration
 from corelab.science import control_charts as charts
 
 #: So many checks make the limits with which later ones are judged: common practice.
 BASELINE = 20
 #: Fewer checks than this tell too little of how checks scatter: common practice.
 FEWEST = 8
+FEWEST_DIFFERENT = 5
+#: Level at which a check is an outlier among the first ones (assumed).
+OUTLIER_CHANCE = 0.01
 #: Nelson's tests that call for action; the others only ask for a look (assumed).
-ACT_ON = (1, 2, 3)
-OUT_OF_CONTROL, OVERDUE = "out of control", "calibration overdue"
-#: A value farther from its certificate than three joint standard uncertainties is no good check.
+ACT_ON = (1, 2)
+DRIFT, RANGE = "drift", "range"
+OUT_OF_CONTROL, OVERDUE, RAN_OUT = "out of control", "calibration overdue", "certificate ran out"
+#: A value farther from its certificate than three joint standard uncertainties is no good check: the action
+#: limit of zeta scores in ISO 13528:2015 (from memory).
 ACT_E_N = 1.5
 KEY = ["instrument_id", "standard_id", "result"]
+WORDS = {str(number): words for number, words in charts.RULES.items()} | {
+    "1": "a value beyond the limits",
+    "2": "nine values in a row on one side of the centre, farther than it is known",
+    DRIFT: "the moving average has drifted from the centre",
+    RANGE: "a step from the value before beyond the limit of moving ranges",
+}
+"""What each test says where it fires."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,7 +61,7 @@ class Doubt:
     words: str
 
     def covers(self, days: pd.Series[str]) -> pd.Series[bool]:
-        """Which days fall within; a reading without a day does, since nobody can tell."""
+        """Which days fall within; of a reading without a day nobody can tell, so it does."""
         inside = pd.Series(True, index=days.index)
         if self.after:
             inside &= days > self.after
@@ -53,52 +73,61 @@ class Doubt:
 def judged(occasions: pd.DataFrame) -> pd.DataFrame:
     """The occasions with the limits of their charts and what is said of each.
 
+    Parameters
+    ----------
+    occasions
+        In order of days: `instrument_id`, `standard_id`, `result`, `unit`, `day`, `value`, `u_value`,
+        `certified`, `u_certified`, `valid_until`, and `calibrated`, which tells calibrations apart.
+
     Returns
     -------
     DataFrame
         The columns of `occasions` and: `centre`, `sigma`, `lower`, `upper`, `limits` (whence),
-        `moving_range`, `range_upper`, `rules` (those that fired), `e_n`, `good`, `why` (in words, where it
-        is not good).
+        `moving_range`, `range_upper`, `rules` (those that fired), `e_n`, `bad`, `good`, `why` (in words,
+        where it is not good).
     """
-    parts = [_chart(part) for _, part in occasions.groupby(KEY, sort=False)]
+    parts = [_chart(part) for _, part in occasions.groupby([*KEY, "calibrated"], sort=False)]
     columns = [
         *occasions.columns, "centre", "sigma", "lower", "upper", "limits", "moving_range", "range_upper",
-        "rules", "e_n", "good", "why",
+        "rules", "e_n", "bad", "good", "why",
     ]  # fmt: skip
-    return pd.concat(parts, ignore_index=True) if parts else pd.DataFrame(columns=columns)
+    if not parts:
+        return pd.DataFrame(columns=columns)
+    return pd.concat(parts).sort_index(kind="stable").reset_index(drop=True)
 
 
 def _chart(part: pd.DataFrame) -> pd.DataFrame:
     values = part["value"].to_numpy(dtype=np.float64)
-    u = part["u_value"].to_numpy(dtype=np.float64)
+    u = np.nan_to_num(part["u_value"].to_numpy(dtype=np.float64))
     certified, u_certified = float(part["certified"].iloc[-1]), float(part["u_certified"].iloc[-1])
-    e_n = charts.normalised_error(values, np.nan_to_num(u), certified, u_certified)
-    kept = ~(np.abs(e_n) > ACT_E_N)
-    kept[np.flatnonzero(kept)[BASELINE:]] = False
-    sound = values[kept]
-    first = sound[~charts.rosner_outliers(sound, len(sound) // 5)]
-    found = charts.individuals_chart(first) if len(first) >= FEWEST else None
-    if found is not None and float(found.sigma) > 0:
-        centre, sigma = float(found.centre), float(found.sigma)
-        limits = f"the first {len(first)} good checks"
-        acting: tuple[int, ...] = ACT_ON
-        range_upper = float(found.range_upper)
+    e_n = charts.normalised_error(values, u, certified, u_certified)
+    disagrees = np.abs(e_n) > ACT_E_N
+    sound = values[np.flatnonzero(~disagrees)[:BASELINE]]
+    first = sound[~charts.rosner_outliers(sound, len(sound) // 5, OUTLIER_CHANCE)]
+    count = len(first)
+    own = count >= FEWEST and len(np.unique(first)) >= FEWEST_DIFFERENT
+    if own:
+        found = charts.individuals_chart(first)
+        centre, sigma, range_upper = float(found.centre), float(found.sigma), float(found.range_upper)
+        factor, limits = charts.limit_factor(count), f"the first {count} good checks"
+        fired = _fired(values, centre, sigma, count, disagrees)
+        fired[RANGE] = np.concatenate([[False], np.abs(np.diff(values)) > range_upper])
     else:
-        centre = certified
-        sigma = float(np.hypot(np.nanmedian(u) if np.isfinite(u).any() else 0.0, u_certified))
-        limits, acting = "the certificate and the stated uncertainty", ACT_ON[:1]
-        range_upper = np.nan
-    fired = charts.run_rules(values, centre, sigma) if sigma > 0 else {}
+        centre, factor, range_upper = certified, 3.0, np.nan
+        sigma = float(np.hypot(np.median(u), u_certified))
+        limits = "the certificate and the stated uncertainty"
+        fired = {"1": np.abs(values - centre) > 3.0 * sigma} if sigma > 0 else {}
+    acting = [t for t in (*map(str, ACT_ON), DRIFT) if t in fired]
+    bad = disagrees.copy()
+    for test in acting:
+        bad |= fired[test]
     expired = np.array(
         [bool(v) and day > v[:10] for day, v in zip(part["day"], part["valid_until"], strict=True)]
     )
-    act = np.zeros(len(values), dtype=np.bool_)
-    for rule in acting:
-        act |= fired.get(rule, np.zeros(len(values), dtype=np.bool_))
     whys: list[str] = []
     for i in range(len(values)):
-        words = [charts.RULES[r] for r in acting if r in fired and fired[r][i]]
-        if abs(e_n[i]) > ACT_E_N:
+        words = [WORDS[test] for test in acting if fired[test][i]]
+        if disagrees[i]:
             words.append(
                 f"{values[i]:.5g} where {certified:.5g} is certified: off by {2 * abs(e_n[i]):.1f} times "
                 "the standard uncertainty of both"
@@ -106,57 +135,99 @@ def _chart(part: pd.DataFrame) -> pd.DataFrame:
         if expired[i]:
             words.append("the standard's certificate had run out")
         whys.append("; ".join(words))
-    rules = [", ".join(str(r) for r, where in fired.items() if where[i]) for i in range(len(values))]
+    rules = [", ".join(test for test, where in fired.items() if where[i]) for i in range(len(values))]
     return part.assign(
         centre=centre,
         sigma=sigma,
-        lower=centre - 3 * sigma,
-        upper=centre + 3 * sigma,
+        lower=centre - factor * sigma,
+        upper=centre + factor * sigma,
         limits=limits,
         moving_range=np.concatenate([[np.nan], np.abs(np.diff(values))]),
         range_upper=range_upper,
         rules=rules,
         e_n=e_n,
-        good=~act & ~(np.abs(e_n) > ACT_E_N) & ~expired,
+        bad=bad & ~expired,
+        good=~bad & ~expired,
         why=whys,
     )
 
 
-def doubts(points: pd.DataFrame, due: Mapping[int, tuple[str, str]], names: Mapping[int, str]) -> list[Doubt]:
+def _fired(
+    values: NDArray[np.float64], centre: float, sigma: float, count: int, disagrees: NDArray[np.bool_]
+) -> dict[str, NDArray[np.bool_]]:
+    """Where which test fires, with limits that rest on so many checks.
+
+    Values nearer to the centre than its own standard error are on neither side of it.
+    """
+    deviate = charts.later_deviate(values, centre, sigma, count)
+    fired = {str(rule): where for rule, where in charts.run_rules(deviate, 0.0, 1.0).items()}
+    aside = np.where(np.abs(values - centre) > sigma / np.sqrt(count), deviate, 0.0)
+    fired["2"] = charts.run_rules(aside, 0.0, 1.0)[2]
+    drifted = np.zeros(len(values), dtype=np.bool_)
+    shocks = np.flatnonzero(disagrees | fired["1"])  # the average begins anew after each
+    for start, stop in zip([0, *(shocks + 1)], [*shocks, len(values)], strict=True):
+        if stop > start:
+            average = charts.drift_deviate(values[start:stop], centre, sigma, count)
+            drifted[start:stop] = np.abs(average) > charts.DRIFT_LIMIT
+    return fired | {DRIFT: drifted}
+
+
+def doubts(
+    points: pd.DataFrame, calibrations: Sequence[Calibration], names: Mapping[int, str]
+) -> list[Doubt]:
     """When readings of which instruments are in doubt.
 
     Parameters
     ----------
     points
         The judged occasions.
-    due
-        By instrument, the days on which its calibration was made and runs out; empty where not stated.
+    calibrations
+        Every calibration that the register of instruments held.
     names
         By instrument.
     """
-    found: list[Doubt] = []
-    for instrument, part in points.groupby("instrument_id", sort=True):
-        days = part.groupby("day", sort=True)["good"].all()
-        name = names.get(int(str(instrument)), "an instrument")
-        last_good, start, bad = "", "", False
-        for day, good in days.items():
-            if good and bad:
-                found.append(Doubt(int(str(instrument)), start, str(day), f"{name} {OUT_OF_CONTROL}"))
-            if good:
-                last_good, bad = str(day), False
-            elif not bad:
-                start, bad = last_good, True
-        if bad:
-            found.append(Doubt(int(str(instrument)), start, "", f"{name} {OUT_OF_CONTROL}"))
-    for instrument, (_, runs_out) in sorted(due.items()):
-        if runs_out:
-            words = f"{names.get(instrument, 'an instrument')} {OVERDUE}"
-            found.append(Doubt(instrument, runs_out[:10], "", words))
-    return found
+    found: dict[Doubt, None] = {}
+    for (instrument, _), part in points.groupby(["instrument_id", "result"], sort=True):
+        number = int(str(instrument))
+        words = f"{names.get(number, 'an instrument')} {OUT_OF_CONTROL}"
+        last_good, start, open_ = "", "", False
+        for day, bad in _days(part).items():
+            if bad and not open_:
+                start, open_ = last_good, True
+            if not bad:
+                if open_:
+                    found[Doubt(number, start, str(day), words)] = None
+                last_good, open_ = str(day), False
+        if open_:
+            found[Doubt(number, start, "", words)] = None
+    for calibration in calibrations:
+        if not calibration.due_on:
+            continue
+        later = [c.made_on for c in _later(calibration, calibrations)]
+        renewed = min(later, default="")
+        if not renewed or renewed > calibration.due_on:
+            words = f"{names.get(calibration.instrument_id, 'an instrument')} {OVERDUE}"
+            found[Doubt(calibration.instrument_id, calibration.due_on, renewed, words)] = None
+    return list(found)
+
+
+def _days(part: pd.DataFrame) -> pd.Series[bool]:
+    """Whether the day's checks were bad, for each day with any that counts; in order."""
+    counting = part[part["bad"].astype(bool) | part["good"].astype(bool)]
+    return counting.groupby("day", sort=True)["bad"].any()
+
+
+def _later(calibration: Calibration, calibrations: Iterable[Calibration]) -> list[Calibration]:
+    return [
+        c
+        for c in calibrations
+        if (c.instrument_id, c.measures) == (calibration.instrument_id, calibration.measures)
+        and c.made_on > calibration.made_on
+    ]
 
 
 def doubted(readings: pd.DataFrame, found: Iterable[Doubt]) -> dict[int, list[str]]:
-    """By plug, the words of the doubts about instruments that read it.
+    """By plug, the words of the doubts about instruments that read it: `blocked`, as it stands in flags.
 
     Parameters
     ----------
@@ -169,9 +240,8 @@ def doubted(readings: pd.DataFrame, found: Iterable[Doubt]) -> dict[int, list[st
         rows = by_instrument.get(doubt.instrument_id)
         if rows is None:
             continue
-        undated_only_overdue = doubt.words.endswith(OVERDUE)
         mask = doubt.covers(rows["day"])
-        if undated_only_overdue:
+        if doubt.words.endswith(OVERDUE):  # most readings are made before a calibration runs out
             mask &= rows["day"] != ""
         for plug in rows.loc[mask, "plug_id"].unique():
             said = words.setdefault(int(plug), [])
@@ -181,41 +251,47 @@ def doubted(readings: pd.DataFrame, found: Iterable[Doubt]) -> dict[int, list[st
 
 
 def states(
-    points: pd.DataFrame,
-    due: Mapping[int, tuple[str, str]],
-    names: Mapping[int, str],
-    today: str,
+    points: pd.DataFrame, calibrations: Sequence[Calibration], names: Mapping[int, str], on: str
 ) -> pd.DataFrame:
     """Each instrument on a day: its calibration, its checks, whether it is in control and since when not."""
     rows: list[dict[str, Any]] = []
-    for number in sorted({*due, *(int(i) for i in points["instrument_id"].unique())}, key=lambda n: names[n]):
-        part = points[(points["instrument_id"] == number) & (points["day"] <= today)]
-        days = part.groupby("day", sort=True)["good"].all()
-        good = [str(d) for d in days[days].index]
-        calibrated, runs_out = due.get(number, ("", ""))
-        state, why = "in control", ""
-        if not len(days):
-            state = "not checked"
-        elif not days.iloc[-1]:
+    points = points[points["day"] <= on]
+    calibrations = [c for c in calibrations if c.made_on <= on]
+    numbers = {*(c.instrument_id for c in calibrations), *map(int, points["instrument_id"].unique())}
+    for number in sorted(numbers, key=lambda n: names[n]):
+        part = points[points["instrument_id"] == number]
+        own = [c for c in calibrations if c.instrument_id == number]
+        newest = [c for c in own if not _later(c, own)]
+        runs_out = min((c.due_on for c in newest if c.due_on), default="")
+        open_ = [d for d in doubts(part, (), names) if not d.before]
+        checked = _days(part)
+        state = "in control" if len(checked) else "not checked"
+        why = ""
+        if open_:
             state = OUT_OF_CONTROL
-            last = part[part["day"] == days.index[-1]]
-            why = "; ".join(f"{r['result']}: {r['why']}" for r in last[~last["good"]].to_dict("records"))
-        if runs_out and today > runs_out[:10]:
-            state = OVERDUE if state != OUT_OF_CONTROL else f"{OUT_OF_CONTROL}, {OVERDUE}"
+            bad = part[part["bad"].astype(bool)]
+            wrong = {r for r, own in part.groupby("result") if _days(own).iloc[-1:].any()}
+            last = bad[bad["result"].isin(wrong)].drop_duplicates(["standard_id", "result"], keep="last")
+            why = "; ".join(f"{r['result']} on {r['day']}: {r['why']}" for r in last.to_dict("records"))
+        if runs_out and on > runs_out:
+            state = f"{state}, {OVERDUE}" if open_ else OVERDUE
+        good = checked[~checked.astype(bool)]
         rows.append(
             {
                 "instrument": names[number],
                 "state": state,
-                "checks": len(days),
-                "last check": str(days.index[-1]) if len(days) else "",
-                "last good check": good[-1] if good else "",
-                "calibrated on": calibrated,
+                "checks": len(checked),
+                "last check": str(checked.index[-1]) if len(checked) else "",
+                "last good check": str(good.index[-1]) if len(good) else "",
+                "in doubt": (min(f"after {d.after}" if d.after else "all" for d in open_) if open_ else ""),
+                "calibrated on": max((c.made_on for c in newest), default=""),
                 "due on": runs_out,
                 "why": why,
             }
         )
     columns = [
-        "instrument", "state", "checks", "last check", "last good check", "calibrated on", "due on", "why",
+        "instrument", "state", "checks", "last check", "last good check", "in doubt", "calibrated on",
+        "due on", "why",
     ]  # fmt: skip
     return pd.DataFrame(rows, columns=columns)
 
@@ -226,8 +302,8 @@ def summaries(points: pd.DataFrame) -> pd.DataFrame:
     for (instrument, standard, result), part in points.groupby(KEY, sort=False):
         values = part["value"].to_numpy(dtype=np.float64)
         last = part.iloc[-1]
-        u = float(np.nanmedian(part["u_value"])) if part["u_value"].notna().any() else 0.0
-        steps = np.abs(np.diff(values))
+        u = float(np.nan_to_num(part["u_value"].median()))
+        steps = part.groupby("calibrated", sort=False)["value"].diff().abs().dropna()
         rows.append(
             {
                 "instrument_id": instrument,
@@ -245,7 +321,7 @@ def summaries(points: pd.DataFrame) -> pd.DataFrame:
                 "lower": last["lower"],
                 "upper": last["upper"],
                 "limits": last["limits"],
-                "bad": int((~part["good"].astype(bool)).sum()),
+                "bad": int(part["bad"].sum()),
             }
         )
     columns = [
@@ -279,5 +355,38 @@ def pooled(points: pd.DataFrame) -> pd.DataFrame:
     columns = [
         "instrument_id", "result", "standards", "degrees of freedom", "pooled repeatability [%]",
         "mean bias [%]",
+    ]  # fmt: skip
+    return pd.DataFrame(rows, columns=columns)
+
+
+def between(points: pd.DataFrame) -> pd.DataFrame:
+    """Repeatability on one instrument and reproducibility between instruments, of each standard and result.
+
+    After ISO 5725-2, an instrument in the place of a laboratory; bad checks are left out.
+    """
+    rows: list[dict[str, Any]] = []
+    good = points[points["good"].astype(bool)]
+    for (standard, result), part in good.groupby(["standard_id", "result"], sort=False):
+        group, instruments = pd.factorize(part["instrument_id"])
+        if len(instruments) < 2 or len(part) <= len(instruments):
+            continue
+        found = charts.precision(part["value"].to_numpy(dtype=np.float64), group)
+        rows.append(
+            {
+                "standard_id": standard,
+                "result": result,
+                "unit": part["unit"].iloc[-1],
+                "instruments": len(instruments),
+                "checks": len(part),
+                "repeatability": float(found.repeatability_sd),
+                "between instruments": float(found.between_sd),
+                "reproducibility": float(found.reproducibility_sd),
+                "repeatability limit": float(found.repeatability_limit),
+                "reproducibility limit": float(found.reproducibility_limit),
+            }
+        )
+    columns = [
+        "standard_id", "result", "unit", "instruments", "checks", "repeatability", "between instruments",
+        "reproducibility", "repeatability limit", "reproducibility limit",
     ]  # fmt: skip
     return pd.DataFrame(rows, columns=columns)

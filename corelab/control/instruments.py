@@ -87,6 +87,34 @@ class Reading:
         return next(found, self.field)
 
 
+@dataclass(frozen=True, slots=True)
+class Calibration:
+    """A calibration of what an instrument measures: the day it was made and the day it runs out, if known."""
+
+    instrument_id: int
+    measures: str
+    made_on: str
+    due_on: str
+
+
+def calibrations(connection: sa.Connection) -> list[Calibration]:
+    """Every calibration that the register of instruments holds or held.
+
+    An earlier row with the same day of calibration was a mistake that was corrected; one with another day
+    was a calibration of its own. Instruments whose rows were withdrawn altogether are left out.
+    """
+    now = store.in_force(connection, "instruments")
+    kept = {(int(i), m) for i, m in zip(now["instrument_id"], now["measures"], strict=True)}
+    found: dict[tuple[int, str, str], Calibration] = {}
+    for frame in (store.in_force(connection, "instruments", superseded=True), now):
+        for row in store.rows_of(frame):
+            number, measures = int(row["instrument_id"]), str(row["measures"])
+            made_on, due_on = ((row[c] or "")[:10] for c in ("calibrated_on", "due_on"))
+            if (number, measures) in kept and (made_on or frame is now):
+                found[number, measures, made_on] = Calibration(number, measures, made_on, due_on)
+    return list(found.values())
+
+
 def _read(kind: str, instrument: str, measure: str, *names: str) -> list[Reading]:
     sheet = SHEETS[kind]
     made = []

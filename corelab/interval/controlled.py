@@ -4,22 +4,24 @@ from __future__ import annotations
 
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass
+from datetime import date
 
 import pandas as pd
 import sqlalchemy as sa
 
 from corelab.bench.occasions import occasions
 from corelab.control import charts
+from corelab.control.instruments import Calibration, calibrations
 from corelab.records import history, store
 from corelab.science.control_charts import pooled_of_pairs
 
 
 @dataclass(frozen=True, slots=True)
 class Control:
-    """The judged checks of a lab, when calibrations run out, and what is in doubt for it."""
+    """The judged checks of a lab, the calibrations of its instruments, and what is in doubt for both."""
 
     points: pd.DataFrame
-    due: dict[int, tuple[str, str]]
+    calibrations: list[Calibration]
     names: Mapping[int, str]
     doubts: list[charts.Doubt]
 
@@ -35,15 +37,10 @@ def control(connection: sa.Connection, identities: store.Identities, stored: Map
     if seal not in _KEPT:
         while len(_KEPT) >= _MOST_KEPT:
             _KEPT.pop(next(iter(_KEPT)))
-        points = charts.judged(occasions(connection, stored))
-        due: dict[int, tuple[str, str]] = {}
-        for row in store.rows_of(store.in_force(connection, "instruments")):
-            calibrated, runs_out = row["calibrated_on"] or "", row["due_on"] or ""
-            known = due.get(int(row["instrument_id"]), ("", ""))
-            earliest = min((d for d in (known[1], runs_out) if d), default="")
-            due[int(row["instrument_id"])] = (max(known[0], calibrated), earliest)
+        made = calibrations(connection)
+        points = charts.judged(occasions(connection, stored, made))
         names = identities.names["instrument"]
-        _KEPT[seal] = Control(points, due, names, charts.doubts(points, due, names))
+        _KEPT[seal] = Control(points, made, names, charts.doubts(points, made, names))
     return _KEPT[seal]
 
 
@@ -66,21 +63,25 @@ def shown(
     identities: store.Identities,
     stored: Mapping[str, str],
     instrument: int | None,
+    on: str,
 ) -> dict[str, pd.DataFrame]:
-    """What `control` shows, with names in the place of numbers; of one instrument, or of all."""
-    from datetime import UTC, datetime
+    """What `control` shows on a day, with names in the place of numbers; of one instrument, or of all.
 
+    Without a day: today, or the day of the newest check if that is later.
+    """
     found = control(connection, identities, stored)
-    points, due = found.points, found.due
+    points, made = found.points, found.calibrations
+    on = on or max([date.today().isoformat(), *points["day"]])
     if instrument is not None:
         points = points[points["instrument_id"] == instrument]
-        due = {n: days for n, days in due.items() if n == instrument}
-    today = datetime.now(UTC).date().isoformat()
+        made = [c for c in made if c.instrument_id == instrument]
+    points = points[points["day"] <= on]
     frames = {
-        "instruments": charts.states(points, due, found.names, today),
+        "instruments": charts.states(points, made, found.names, on),
         "charts": charts.summaries(points),
         "checks": points,
         "precision": charts.pooled(points),
+        "between instruments": charts.between(points),
     }
     for name, frame in frames.items():
         if "instrument_id" in frame:
@@ -90,11 +91,27 @@ def shown(
         if "standard_id" in frame:
             standards = [identities.name("standard", int(n)) for n in frame["standard_id"]]
             frame = frame.drop(columns="standard_id")
-            frame.insert(1, "standard", standards)
+            frame.insert(1 if "instrument" in frame else 0, "standard", standards)
         frames[name] = frame.reset_index(drop=True)
     if instrument is None:
+        frames["standards"] = _standards(connection, identities, on)
         frames["duplicates"] = _duplicates(connection)
     return frames
+
+
+def _standards(connection: sa.Connection, identities: store.Identities, on: str) -> pd.DataFrame:
+    """The standards and whether their certificates hold on a day."""
+    rows = [
+        {
+            "standard": identities.name("standard", int(row["standard_id"])),
+            "kind": row["kind"],
+            "certificate": row["certificate"] or "",
+            "valid until": row["valid_until"] or "",
+            "state": charts.RAN_OUT if row["valid_until"] and on > row["valid_until"][:10] else "valid",
+        }
+        for row in store.rows_of(store.in_force(connection, "standards"))
+    ]
+    return pd.DataFrame(rows, columns=["standard", "kind", "certificate", "valid until", "state"])
 
 
 def _duplicates(connection: sa.Connection) -> pd.DataFrame:

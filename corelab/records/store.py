@@ -574,6 +574,11 @@ def events(connection: sa.Connection) -> pd.DataFrame:
     return frame_of(connection, sa.select(schema.event).order_by(schema.event.c.number))
 
 
+def certified_plugs(connection: sa.Connection) -> list[int]:
+    """The standards that carry a certified value, by their numbers as plugs."""
+    return sorted({int(n) for n in in_force(connection, "certified values")["standard_id"]})
+
+
 def instruments_read(
     connection: sa.Connection, plug_ids: Collection[int], instruments: Collection[int]
 ) -> pd.DataFrame:

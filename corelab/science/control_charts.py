@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from corelab.science.formula import Array, Formula, Symbol, finite, refuse
+from corelab.science.formula import Array, Formula, Symbol, finite, not_negative, positive, refuse
 
 D2_OF_TWO = 1.128
 """Mean range of two normal values over their standard deviation, 2/sqrt(pi), as tables print it."""
@@ -28,8 +28,13 @@ RULES = {
     8: "eight values in a row beyond one standard deviation on either side",
 }
 """Nelson's tests by their numbers."""
-DIXON_95 = {3: 0.970, 4: 0.829, 5: 0.710, 6: 0.625, 7: 0.568, 8: 0.526, 9: 0.493, 10: 0.466}
-"""Two-sided 95 % critical values of r10: Rorabacher 1991, Anal. Chem. 63:139 (from memory)."""
+DRIFT_WEIGHT = 0.2
+"""Weight of the newest value in the moving average that looks for drift."""
+DRIFT_LIMIT = 2.962
+"""Its limit in standard deviations of the average. With a weight of 0.2 a sound process passes it once in
+500 values, and a shift of one standard deviation is found after about ten: Lucas and Saccucci 1990,
+Technometrics 32:1 (from memory)."""
+_LEAST_CHANCE = 1e-300
 
 
 @dataclass(frozen=True, slots=True)
@@ -139,6 +144,136 @@ def run_rules(values: ArrayLike, centre: float, sigma: float) -> dict[int, NDArr
     }
 
 
+def range_freedom(count: ArrayLike) -> Array:
+    """Degrees of freedom of a standard deviation from the mean moving range of `count` values.
+
+    Neighbouring ranges share a value: with E and V the mean and variance of one range of two normal values
+    and C the covariance of neighbours, var(mean MR)/E^2 = (V/m + 2 C (m - 1)/m^2)/E^2 for m = count - 1
+    ranges, which is that of a standard deviation of half its inverse degrees of freedom. In units of sigma^2:
+    E^2 = 4/pi, V = 2 - 4/pi, C = (2 sqrt(3) + pi/3)/pi - 4/pi.
+
+    Examples
+    --------
+    >>> range_freedom([8, 20]).round(1).tolist()
+    [4.4, 11.7]
+    """
+    ranges = np.asarray(count, dtype=np.float64) - 1.0
+    square = 4.0 / np.pi
+    neighbours = (2.0 * np.sqrt(3.0) + np.pi / 3.0) / np.pi - square
+    relative = ((2.0 - square) / ranges + 2.0 * neighbours * (ranges - 1.0) / ranges**2) / square
+    return np.asarray(0.5 / relative)
+
+
+def limit_factor(count: int) -> float:
+    """How many standard deviations from the centre the limits for later values lie.
+
+    As far as lets one value in 370 of a sound process beyond them, whatever the number of values that gave
+    centre and standard deviation: 3 for very many.
+
+    Examples
+    --------
+    >>> round(limit_factor(20), 2), round(limit_factor(100_000), 2)
+    (3.88, 3.0)
+    """
+    from scipy import special
+
+    t = -special.stdtrit(float(range_freedom(count)), float(special.ndtr(-3.0)))
+    return float(t * np.sqrt(1.0 + 1.0 / count))
+
+
+def later_deviate(value: ArrayLike, centre: ArrayLike, sigma: ArrayLike, count: ArrayLike) -> Array:
+    r"""How far a value lies from a centre that few earlier values gave, as a standard normal deviate.
+
+    Parameters
+    ----------
+    value
+        A later value, in one unit [any].
+    centre, sigma
+        Mean of the earlier values and their standard deviation from moving ranges, above 0.
+    count
+        How many earlier values, above 1.
+
+    Returns
+    -------
+    ndarray
+        The normal deviate as probable as the value; missing where anything is missing.
+
+    Raises
+    ------
+    Impossible
+        If sigma is not above 0, count not above 1, or a value infinite.
+
+    Notes
+    -----
+    t = (x - m)/(sigma sqrt(1 + 1/n)) follows Student's law nearly, with the degrees of freedom of a mean
+    moving range; z = Phi^-1(T(t)). Without it three standard deviations of a baseline of 20 let one sound
+    value in 65 through, not one in 370 (simulated).
+
+    References
+    ----------
+    Quesenberry 1991, SPC Q charts for start-up processes and short or long runs, J. Quality Technology
+    23:213 (the transformation, from memory). Degrees of freedom: `range_freedom`.
+
+    Examples
+    --------
+    >>> later_deviate([10.3, 10.3], 10.0, 0.1, [20, 100_000]).round(2).tolist()
+    [2.48, 3.0]
+    """
+    from scipy import special
+
+    x, m = finite("value", value), finite("centre", centre)
+    s, n = positive("sigma", sigma), finite("count", count)
+    refuse(n.real <= 1.0, "count", n, "a number above 1")
+    t = (x - m) / (s * np.sqrt(1.0 + 1.0 / n))
+    chance = special.stdtr(range_freedom(n), -np.abs(t))
+    size = -special.ndtri(np.maximum(chance, _LEAST_CHANCE))
+    return np.asarray(np.sign(t) * size, dtype=np.float64)
+
+
+def drift_deviate(values: ArrayLike, centre: float, sigma: float, count: int) -> Array:
+    """The moving average that finds a slow drift, as a standard normal deviate after each value.
+
+    Parameters
+    ----------
+    values
+        Values (n,) in the order of time, none missing.
+    centre, sigma, count
+        Mean, standard deviation and number of the values that gave both.
+
+    Notes
+    -----
+    z_i = w x_i + (1 - w) z_(i-1), z_0 the centre; var z_i = sigma^2 w/(2 - w) (1 - (1 - w)^(2i)), to which
+    the variance of the centre, sigma^2/count, is added; judged by Student's law as in `later_deviate`.
+
+    References
+    ----------
+    Roberts 1959, Control chart tests based on geometric moving averages, Technometrics 1:239; NIST/SEMATECH
+    2012, e-Handbook of Statistical Methods, section 6.3.2.4 (both from memory).
+    """
+    from scipy import special
+
+    average = moving_average(values, centre)
+    steps = np.arange(1, average.size + 1)
+    spread = drift_spread(steps, sigma) ** 2 + sigma**2 / count
+    t = (average - centre) / np.sqrt(spread)
+    chance = special.stdtr(float(range_freedom(count)), -np.abs(t))
+    return np.asarray(np.sign(t) * -special.ndtri(np.maximum(chance, _LEAST_CHANCE)), dtype=np.float64)
+
+
+def moving_average(values: ArrayLike, start: float, weight: float = DRIFT_WEIGHT) -> Array:
+    """z_i = w x_i + (1 - w) z_(i-1) with z_0 = `start`; values (n,) in the order of time."""
+    from scipy.signal import lfilter
+
+    given = np.asarray(values, dtype=np.float64) - start
+    return np.asarray(start + lfilter([weight], [1.0, weight - 1.0], given), dtype=np.float64)
+
+
+def drift_spread(steps: ArrayLike, sigma: float, weight: float = DRIFT_WEIGHT) -> Array:
+    """Standard deviation of the moving average after so many values."""
+    i = np.asarray(steps, dtype=np.float64)
+    return np.asarray(sigma * np.sqrt(weight / (2.0 - weight) * (1.0 - (1.0 - weight) ** (2.0 * i))))
+
+
 def _in_a_row(mask: NDArray[np.bool_], many: int) -> NDArray[np.bool_]:
     return _of(mask, many, many)
 
@@ -173,9 +308,9 @@ def grubbs_critical(count: int, alpha: float = 0.05, *, two_sided: bool = True) 
     >>> round(grubbs_critical(8, two_sided=False), 3)
     2.032
     """
-    from scipy import stats
+    from scipy import special
 
-    t2 = stats.t.isf(alpha / (count * (2 if two_sided else 1)), count - 2) ** 2
+    t2 = special.stdtrit(count - 2, alpha / (count * (2 if two_sided else 1))) ** 2
     return float((count - 1) / np.sqrt(count) * np.sqrt(t2 / (count - 2 + t2)))
 
 
@@ -249,7 +384,7 @@ def rosner_outliers(values: ArrayLike, most: int, alpha: float = 0.05) -> NDArra
 
 def rosner_steps(values: ArrayLike, most: int, alpha: float = 0.05) -> tuple[NDArray[np.bool_], Array, Array]:
     """The same, with the statistics R (most,) and their critical values."""
-    from scipy import stats
+    from scipy import special
 
     given = np.asarray(values, dtype=np.float64)
     left = np.flatnonzero(~np.isnan(given))
@@ -258,7 +393,7 @@ def rosner_steps(values: ArrayLike, most: int, alpha: float = 0.05) -> tuple[NDA
         away, spread = _away(given[left])
         worst = int(np.argmax(away))
         statistics.append(float(away[worst] / spread) if spread > 0 else 0.0)
-        t = stats.t.isf(alpha / (2 * (total - i + 1)), total - i - 1)
+        t = -special.stdtrit(total - i - 1, alpha / (2 * (total - i + 1)))
         critical.append(float((total - i) * t / np.sqrt((total - i - 1 + t**2) * (total - i + 1))))
         taken.append(left[worst])
         left = np.delete(left, worst)
@@ -282,18 +417,60 @@ def tietjen_moore(values: ArrayLike, many: int) -> float:
     return float(np.sum((kept - kept.mean()) ** 2) / np.sum((given - given.mean()) ** 2))
 
 
-def dixon_q(values: ArrayLike) -> tuple[float, float]:
-    """Dixon's r10 of the more extreme end of 3 to 10 values, and its 95 % critical value.
+def tietjen_moore_critical(count: int, many: int, alpha: float = 0.05, *, draws: int = 100_000) -> float:
+    """The value of E below which `many` of `count` values are outliers: simulated, the same each time.
+
+    No formula is known; Tietjen and Moore simulated theirs too. With 100,000 draws its standard error is
+    about 0.001.
+    """
+    drawn = np.random.default_rng(1972).standard_normal((draws, count))
+    away = np.abs(drawn - drawn.mean(axis=1, keepdims=True))
+    kept = np.take_along_axis(drawn, np.argsort(away, axis=1)[:, : count - many], axis=1)
+    inner = np.sum((kept - kept.mean(axis=1, keepdims=True)) ** 2, axis=1)
+    return float(np.quantile(inner / np.sum(away**2, axis=1), alpha))
+
+
+def dixon_q(values: ArrayLike, alpha: float = 0.05) -> tuple[float, float]:
+    """Dixon's r10 of the more extreme end of 3 to 30 values, and its two-sided critical value.
 
     References
     ----------
-    Rorabacher 1991, Statistical treatment for rejection of deviant values, Anal. Chem. 63:139 (from memory).
+    Dixon 1951, Ratios involving extreme values, Ann. Math. Statist. 22:68 (from memory).
     """
     ordered = np.sort(np.asarray(values, dtype=np.float64))
-    refuse(not 3 <= ordered.size <= 10, "values", float(ordered.size), "3 to 10 values")
+    refuse(not 3 <= ordered.size <= 30, "values", float(ordered.size), "3 to 30 values")
     span = ordered[-1] - ordered[0]
     gap = max(ordered[1] - ordered[0], ordered[-1] - ordered[-2])
-    return float(gap / span) if span > 0 else 0.0, DIXON_95[ordered.size]
+    return float(gap / span) if span > 0 else 0.0, dixon_critical(ordered.size, alpha)
+
+
+def dixon_critical(count: int, alpha: float = 0.05) -> float:
+    """The two-sided critical value of Dixon's r10 for `count` normal values.
+
+    As tables of two-sided tests have it, each end is tested at half of `alpha`. The chance that one end
+    passes q: n (n - 1) times the integral over the lowest value a and the range w of
+    f(a) f(a + w) (F(a + (1 - q) w) - F(a))^(n - 2), f and F the normal density and distribution: the other
+    values lie between the lowest one and the gap.
+
+    Examples
+    --------
+    >>> [round(dixon_critical(n), 3) for n in (3, 10)]
+    [0.97, 0.466]
+    """
+    from scipy import special
+    from scipy.optimize import brentq
+
+    nodes, weights = np.polynomial.legendre.leggauss(96)
+    low, low_weight = 8.5 * nodes[:, np.newaxis], 8.5 * weights[:, np.newaxis]
+    span, span_weight = 7.0 * (nodes + 1.0), 7.0 * weights
+    density = np.exp(-0.5 * (low**2 + (low + span) ** 2)) / (2.0 * np.pi) * low_weight * span_weight
+    below = special.ndtr(low)
+
+    def beyond(q: float) -> float:
+        between = (special.ndtr(low + (1.0 - q) * span) - below) ** (count - 2)
+        return float(count * (count - 1) * np.sum(density * between) - alpha / 2.0)
+
+    return float(brentq(beyond, 0.0, 1.0, xtol=1e-9))
 
 
 @dataclass(frozen=True, slots=True)
@@ -390,20 +567,41 @@ def normalised_error(
 ) -> Array:
     """E_n: a difference from the certified value over the expanded uncertainty (k = 2) of both.
 
-    At most 1 in size where value and certificate agree.
+    Parameters
+    ----------
+    value, certified
+        What was measured and what is certified, in one unit [any].
+    u_value, u_certified
+        Their standard uncertainties in the same unit, 0 or more.
+
+    Returns
+    -------
+    ndarray
+        At most 1 in size where value and certificate agree; missing where anything is missing or both are
+        stated without uncertainty and are equal.
+
+    Raises
+    ------
+    Impossible
+        If an uncertainty is below 0 or anything is infinite.
+
+    Notes
+    -----
+    E_n = (x - X)/(2 sqrt(u_x^2 + u_X^2)). Twice E_n is the zeta score.
 
     References
     ----------
-    ISO 13528:2015, Statistical methods for use in proficiency testing, section 9.6 (from memory).
+    ISO 13528:2015, Statistical methods for use in proficiency testing, section 9 (from memory).
 
     Examples
     --------
     >>> round(float(normalised_error(20.02, 0.008, 20.0, 0.003)), 2)
     1.17
     """
-    difference = np.asarray(value, dtype=np.float64) - np.asarray(certified, dtype=np.float64)
-    joint = np.hypot(np.asarray(u_value, dtype=np.float64), np.asarray(u_certified, dtype=np.float64))
-    return np.asarray(difference / (2.0 * joint))
+    difference = finite("value", value) - finite("certified", certified)
+    u, u_other = not_negative("u_value", u_value), not_negative("u_certified", u_certified)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.asarray(difference / (2.0 * np.sqrt(u**2 + u_other**2)))
 
 
 _VALUES = Symbol("x", "values", "", "values in the order of time")
@@ -465,5 +663,40 @@ FORMULAS: tuple[Formula, ...] = (
         "computed example; analysis of variance as oracle",
         precision,
         elementwise=False,
+    ),
+    Formula(
+        "later-deviate",
+        1,
+        "Deviate of a value from a short baseline",
+        "z = Phi^-1(T((x - m)/(sigma sqrt(1 + 1/n))))",
+        (
+            Symbol("x", "value", "", "a later value"),
+            Symbol("m", "centre", "", "mean of the earlier values"),
+            Symbol("sigma", "sigma", "", "their standard deviation, from moving ranges"),
+            Symbol("n", "count", "", "number of earlier values", low=8.0),
+        ),
+        (Symbol("z", "deviate", "", "standard normal deviate"),),
+        "independent, nearly normal values",
+        "Quesenberry 1991, J. Quality Technology 23:213 (from memory)",
+        "false alarms simulated for baselines of 8, 12 and 20",
+        later_deviate,
+        smooth=False,
+    ),
+    Formula(
+        "normalised-error",
+        1,
+        "Agreement with a certificate",
+        "E_n = (x - X)/(2 sqrt(u_x^2 + u_X^2))",
+        (
+            Symbol("x", "value", "", "value measured"),
+            Symbol("u_x", "u_value", "", "its standard uncertainty"),
+            Symbol("X", "certified", "", "value certified"),
+            Symbol("u_X", "u_certified", "", "standard uncertainty of the certificate"),
+        ),
+        (Symbol("E_n", "normalised_error", "", "normalised error"),),
+        "independent uncertainties",
+        "ISO 13528:2015, section 9 (from memory)",
+        "by hand; laws",
+        normalised_error,
     ),
 )

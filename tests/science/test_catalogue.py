@@ -123,6 +123,13 @@ POSSIBLE = {
     "conductivity_cm_s": 0.01,
     "density_g_cm3": 0.998,
     "sieved_mass_g": 33.4,
+    "value": 50.2,
+    "u_value": 0.04,
+    "certified": 50.0,
+    "u_certified": 0.03,
+    "centre": 50.0,
+    "sigma": 0.1,
+    "count": 12.0,
     **{
         f"percentile_{p}_phi": phi
         for p, phi in zip((5, 16, 25, 50, 75, 84, 95), (0.9, 1.4, 1.6, 2.1, 2.7, 3.0, 3.9), strict=True)
@@ -236,6 +243,10 @@ ANY_SIGN = {
     ("grubbs-outlier", "values"),
     ("precision", "values"),
     ("duan-factor", "residuals_decades"),
+    ("later-deviate", "value"),
+    ("later-deviate", "centre"),
+    ("normalised-error", "value"),
+    ("normalised-error", "certified"),
 }
 LEAVES_MISSING_OUT = {"flow-units", "dykstra-parsons"}
 ALL = list(formulas().values())
