@@ -11,7 +11,7 @@ import pandas as pd
 import sqlalchemy as sa
 
 from corelab.bench import settings as lab_settings
-from corelab.interval import life, recovery, select
+from corelab.interval import life, other_labs, recovery, select
 from corelab.records import history, store
 from corelab.reports.workbook import TableSheet, WellReport
 from corelab.review import entitled
@@ -62,6 +62,11 @@ def report(
         remarks.append(
             "Percussion sidewall plugs: the impact of the bullet can have changed porosity and permeability; "
             "lithology and saturations stay useful (common practice)."
+        )
+    if (results["status"] == other_labs.STATUS).any():
+        remarks.append(
+            "What another laboratory reported is shown as it reported it, under its name; nothing of it was "
+            "measured or approved here."
         )
     return WellReport(
         well=identities.name("well", number),
@@ -157,6 +162,7 @@ def _standing(
         "approved": "approved",
         "newer waits": "approved, and something newer waits",
         "computed": "not reviewed",
+        other_labs.STATUS: "of another laboratory, as reported",
     }
     newest = store.approvals(connection, plug_ids)
     by = sorted(set(newest.loc[newest["verdict"] == "approved", "person"]))
