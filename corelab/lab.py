@@ -29,8 +29,8 @@ from corelab.version import __version__
 if TYPE_CHECKING:
     import sqlalchemy as sa
 
-    from corelab.interval.trend import Trends
     from corelab.bench.other_labs import OtherLabReport
+    from corelab.interval.trend import Trends
     from corelab.review.verify import Verified
 
 

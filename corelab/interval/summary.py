@@ -15,7 +15,7 @@ from corelab.bench import compute
 from corelab.bench import settings as lab_settings
 from corelab.control.charts import OUT_OF_CONTROL, OVERDUE
 from corelab.errors import NotFound, Usage, quoted
-from corelab.interval import select
+from corelab.interval import other_labs, select
 from corelab.interval import where as conditions
 from corelab.records import store
 from corelab.science import averages, heterogeneity
@@ -154,7 +154,8 @@ def _prepared(
     facts = store.in_force(connection, "plugs", select.plugs_of_well(identities, number))
     own = facts.assign(key=[store.name_key(identities.name("plug", int(p))) for p in facts["plug_id"]])
     own = own.set_index("key")
-    keys = frame["plug"].map(store.name_key)
+    ours = frame["status"] != other_labs.STATUS
+    keys = frame["plug"].map(store.name_key).where(ours, "")
     companion = {
         key: identities.name("plug", int(p)) for key, p in own["companion_of_id"].items() if not pd.isna(p)
     }
@@ -378,14 +379,16 @@ def _vertical(
         (lab, store.name_key(p)): kh
         for p, lab, kh in zip(horizontal["plug"], horizontal["laboratory"], horizontal["k"], strict=True)
     }
+    there = set(zip(part["laboratory"], part["plug"].map(store.name_key), strict=True))
     depths = horizontal["depth"].to_numpy(dtype=np.float64)
     ratios: list[float] = []
     pairs = 0
     for row in across.to_dict("records"):
         lab = row["laboratory"]
         kh = by_name.get((lab, store.name_key(row["companion"]))) if row["companion"] else None
-        kh = kh or by_name.get((lab, _sibling(row["plug"])))
-        if kh is None and len(depths):
+        sibling = (lab, _sibling(row["plug"]))
+        kh = kh or by_name.get(sibling)
+        if kh is None and sibling not in there and len(depths):
             near = np.where(horizontal["laboratory"] == lab, np.abs(depths - row["depth_m"]), np.inf)
             nearest = int(np.argmin(near))
             kh = float(horizontal["k"].iloc[nearest]) if near[nearest] <= _SAME_POINT_M else None

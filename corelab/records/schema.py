@@ -422,8 +422,6 @@ APPEND_ONLY: tuple[sa.Table, ...] = (
     control_release,
     export,
     partner,
-)
-
     other_file,
     other_plug,
     other_result,
