@@ -381,8 +381,7 @@ def _vertical(
     }
     there = set(zip(part["laboratory"], part["plug"].map(store.name_key), strict=True))
     depths = horizontal["depth"].to_numpy(dtype=np.float64)
-    ratios: list[float] = []
-    pairs = 0
+    pairs: list[tuple[float, float]] = []
     for row in across.to_dict("records"):
         lab = row["laboratory"]
         kh = by_name.get((lab, store.name_key(row["companion"]))) if row["companion"] else None
@@ -393,30 +392,30 @@ def _vertical(
             nearest = int(np.argmin(near))
             kh = float(horizontal["k"].iloc[nearest]) if near[nearest] <= _SAME_POINT_M else None
         if kh:
-            ratios.append(row[_K] / kh)
-            pairs += 1
+            pairs.append((row[_K], kh))
     made: dict[str, Any] = {
         "vertical to horizontal ratio": None,
         "vertical to horizontal convention": "geometric mean of the ratios of plugs of one sample point",
-        "vertical to horizontal pairs": pairs,
+        "vertical to horizontal pairs": len(pairs),
         "vertical to horizontal of layers": None,
     }
-    if ratios:
-        r = np.array(ratios)
+    across_md: Array = across[_K].to_numpy(dtype=np.float64)
+    along_md: Array = horizontal["k"].to_numpy(dtype=np.float64)
+    if pairs:
+        across_md, along_md = np.array(pairs).T
+        r = across_md / along_md
         made["vertical to horizontal ratio"] = float(np.exp(np.log(r).mean()))
         made["vertical to horizontal median"] = float(np.median(r))
         made["vertical above horizontal"] = int((r > 1).sum())
-    if len(horizontal):
-        kh = horizontal["k"].to_numpy(dtype=np.float64)
-        arithmetic = float(averages.means(kh, np.ones(len(kh))).arithmetic)
-        kv = across[_K].to_numpy(dtype=np.float64)
-        layers = kv if len(kv) else kh
+    if len(along_md):
+        arithmetic = float(averages.means(along_md, np.ones(len(along_md))).arithmetic)
+        layers = across_md if len(across_md) else along_md
         made["vertical to horizontal of layers"] = (
             float(averages.means(layers, np.ones(len(layers))).harmonic) / arithmetic
         )
         made["vertical to horizontal of layers convention"] = (
-            f"harmonic mean of {'vertical' if len(kv) else 'the same'} plugs over arithmetic mean of "
-            "horizontal ones"
+            f"harmonic mean of {'vertical' if len(across_md) else 'the same'} plugs over arithmetic mean of "
+            f"horizontal ones{' of the same pairs' if pairs else ''}"
         )
     return made
 
