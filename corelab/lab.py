@@ -30,6 +30,7 @@ if TYPE_CHECKING:
     import sqlalchemy as sa
 
     from corelab.bench.other_labs import OtherLabReport
+    from corelab.formats.well_heading import WellHeading
     from corelab.interval.trend import Trends
     from corelab.review.verify import Verified
 
@@ -907,8 +908,8 @@ class Lab:
                 report.notices.append(f"the file names the well {quoted(found.well)}")
             stored = store.settings(connection)
             facts = store.in_force(connection, "wells", [number], by="well_id")
-            depths = select.depth_unit(facts, stored, unit)
-            if not unit:
+            depths = select.depth_unit(facts, stored, unit or found.depth_unit)
+            if not (unit or found.depth_unit):
                 report.notices.append(f"depths are taken as {depths}; say --unit if they are in another")
             plugs = plugs_of(
                 found, laboratory=laboratory.strip(), depth_unit=depths, told=report.notices.append
@@ -1011,6 +1012,49 @@ class Lab:
         from corelab.formats.tables_out import write_parquet
 
         return self._issue_table("parquet", write_parquet, well, Path(out), filters, recipient, reason)
+
+    def write_las(
+        self,
+        well: str,
+        out: str | Path,
+        *,
+        version: str = "2.0",
+        recipient: str = "",
+        reason: str = "",
+        **filters: Any,
+    ) -> Path:
+        """Write the interval of a well as LAS: 2.0 on irregular depths, or 3.0 with its core sections."""
+        from corelab.formats import las_out
+
+        if version not in las_out.VERSIONS:
+            raise Usage(f"--version is {' or '.join(las_out.VERSIONS)}, not {quoted(version)}.")
+
+        heading = self._well_heading(well)
+
+        def write(part: Path, frame: pd.DataFrame) -> None:
+            las_out.write_las(part, frame, heading, version)
+
+        return self._issue_table("las", write, well, Path(out), filters, recipient, reason)
+
+    def write_spwla(
+        self, well: str, out: str | Path, *, recipient: str = "", reason: str = "", **filters: Any
+    ) -> Path:
+        """Write the interval of a well in the SPWLA core-data format."""
+        from corelab.formats.spwla_out import write_spwla
+
+        heading = self._well_heading(well)
+
+        def write(part: Path, frame: pd.DataFrame) -> None:
+            write_spwla(part, frame, heading)
+
+        return self._issue_table("spwla", write, well, Path(out), filters, recipient, reason)
+
+    def _well_heading(self, well: str) -> WellHeading:
+        """The facts of a well that a file for other programs opens with."""
+        from corelab.reports.well import heading
+
+        with self._reading() as connection:
+            return heading(connection, store.Identities.read(connection), well)
 
     def _issue_table(
         self,

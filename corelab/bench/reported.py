@@ -21,7 +21,7 @@ import numpy as np
 
 from corelab import units
 from corelab.errors import quoted
-from corelab.formats.spwla_in import Meaning, Sample, SpwlaFile
+from corelab.formats.spwla_in import FACTS, FLAGS, Meaning, Sample, SpwlaFile
 from corelab.quantities import RESULTS
 from corelab.records.store import name_key
 from corelab.science.lithology import grain_density_range_g_cm3
@@ -30,8 +30,11 @@ NOT_STATED = "not stated"
 ZERO = "zero in the file, taken as not measured"
 SUMMATION = "summation of fluids"
 REPORTED = "reported"
-FLAGS = "flags: "
-HORIZONTAL, VERTICAL = "horizontal", "vertical"
+HORIZONTAL, VERTICAL, OBLIQUE = "horizontal", "vertical", "oblique"
+#: The stress of the results beside it, of those whose name ends with its basis.
+STRESS = "net confining stress"
+DEPTH_BASES = ("driller", "log")
+_ROUTES = ("bulk-grain", "bulk-pore", "pore-grain")
 _NULLS = frozenset({-99.0, -99.9, -99.99, -999.0, -999.25, -999.99, -1001.0, -1002.0, -9999.0, -9999.25})
 #: What no negative number of these quantities can be; nor can one that comes back as often by chance.
 _LOWEST, _OFTEN = -90.0, 3
@@ -39,6 +42,7 @@ _NOTHING = frozenset({"", "-", "--", "n/a", "na", "nan", "null"})
 _TOKEN = re.compile(r"([<>]?)\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][-+]?\d{1,3})?)")
 #: Codes of units seen in files, with what the same files show them to be.
 UNIT_CODES: Mapping[int, str] = {2031: "mD", 3084: "%", 3085: "%", 1086: "g/cm3"}
+_TOLD_BY_SIZE = frozenset({"fraction", "density", "permeability", "volume", "mass"})
 _NEVER_ZERO = frozenset({"permeability", "density", "volume", "mass"})
 _UNIT_WORDS = (
     (r"\bmd\b|millidarc", "mD"),
@@ -49,6 +53,11 @@ _UNIT_WORDS = (
     (r"\bfrac|v/v|\bdec\.|\bdecimal", "v/v"),
     (r"\bcm3\b|\bcc\b|\bml\b|\bcm³", "cm3"),
     (r"\(g\)|\bgrams?\b", "g"),
+    (r"\bkpa", "kPa"),
+    (r"\bmpa", "MPa"),
+    (r"\bpsia?\b", "psia"),
+    (r"\bpsi\w?\b", "psi"),
+    (r"\bbar", "bar"),
 )
 _STRESS = re.compile(
     r"(?:@|\bat\b|\bncs\b|\bnob\b|overburden\D{0,12})\s*=?\s*(\d+(?:\.\d+)?)\s*(psi|bar|mpa|kpa)\w?", re.I
@@ -77,7 +86,7 @@ class Column:
 
     @property
     def kind(self) -> str:
-        return RESULTS[self.quantity].kind
+        return "stress" if self.quantity == STRESS else RESULTS[self.quantity].kind
 
 
 @dataclass(slots=True)
@@ -102,7 +111,10 @@ class Plug:
     sample: str
     laboratory: str
     depth_m: float | None
+    depth_basis: str
+    source: str
     orientation: str
+    facies: str
     lithology: str
     description: str
     row: int
@@ -139,7 +151,9 @@ def plugs_of(file: SpwlaFile, *, laboratory: str, depth_unit: str, told: Callabl
             told(f"{_shown(meaning)}: a second column of the same; its {filled} values are kept as entered")
             continue
         taken.add(key)
-        known.append(_with_unit(column, meaning, cells, nulls, told))
+        measured = _with_unit(column, meaning, cells, nulls, told)
+        if measured is not None:
+            known.append(measured)
     lengths = units.unit(depth_unit, "length")
     made: list[Plug] = []
     for sample in file.samples:
@@ -178,6 +192,8 @@ def _understood(place: int, meaning: Meaning) -> Column | None:
         orientation = VERTICAL
     elif re.search(r"\bhor|\bh\b|\bk[a-z]*h\b", text):
         orientation = HORIZONTAL
+    elif re.search(r"\bobl", text):
+        orientation = OBLIQUE
     elif "permeability" in quantity and (whole := re.search(r"\bk?(max|90)\b", text)):
         orientation, direction = HORIZONTAL, whole[1]
     stress = _STRESS.search(text)
@@ -192,6 +208,15 @@ def _quantity(text: str) -> tuple[str, str] | None:
     def has(pattern: str) -> bool:
         return re.search(pattern, text) is not None
 
+    if has(r"^(net )?(confining|overburden|effective) (stress|press)|^ncs\b|^nob\b"):
+        return STRESS, "porosity" if has("poros") else "permeability" if has("perm") else ""
+    for name, pattern in (
+        ("mean pressure", r"\bmean press"),
+        ("slip factor", r"\bslip factor|klinkenberg factor"),
+        ("dry mass", r"\bdry (mass|weight)"),
+    ):
+        if has(pattern):
+            return name, REPORTED
     if has(r"\bperm|\bk(air|gas|liq|l|inf|h|v|ah|av|lh|lv|max|90)?\b") and not has(r"\brel|ratio|log"):
         if has(r"klink|\bkl[a-z]?\b|\bkinf\b|equiv|\bkliq|slip|\bliq"):
             return "klinkenberg permeability", REPORTED
@@ -200,7 +225,9 @@ def _quantity(text: str) -> tuple[str, str] | None:
         gases = (("nitrogen", r"nitrogen|\bn2\b"), ("helium", r"\bhe(lium)?\b"), ("air", r"air|\bka[hv]\b"))
         return "gas permeability", next((gas for gas, pattern in gases if has(pattern)), "")
     if has(r"\bpor(e|\b|\.|os)|\bphi\b") and not has(r"vol|press|throat|size|compress"):
-        return "porosity", SUMMATION if has(r"\bsum") else REPORTED
+        if has(r"\bsum"):
+            return "porosity", SUMMATION
+        return "porosity", next((route for route in _ROUTES if route in text), REPORTED)
     if has(r"dens|\bg\.?d\b|\brho"):
         if has(r"grain|matrix|\bg\.?d\b|\bma\b"):
             return "grain density", REPORTED
@@ -223,8 +250,8 @@ def _with_unit(
     cells: Sequence[str],
     nulls: frozenset[float],
     told: Callable[[str], None],
-) -> Column:
-    """The unit by its code, else by the words, else by the size of the values."""
+) -> Column | None:
+    """The unit by its code, else by the words, else by the size of the values where that can tell."""
     table = units.UNITS[column.kind]
     symbol = next((UNIT_CODES[c] for c in meaning.codes[1:] if UNIT_CODES.get(c) in table), "")
     if not symbol:
@@ -236,6 +263,12 @@ def _with_unit(
         if small:
             told(f"{_shown(meaning)}: all values are below 1 %; ask whether they are fractions")
         return replace(column, symbol=symbol)
+    if column.kind not in _TOLD_BY_SIZE:
+        if values:
+            told(
+                f"{_shown(meaning)}: its unit is not known here; its {len(values)} values are kept as entered"
+            )
+        return None
     middle = float(np.median(values)) if values else math.nan
     if column.kind == "fraction":
         symbol = "%" if values and max(values) > 1.0 else "v/v"
@@ -303,6 +336,8 @@ def _value(column: Column, text: str) -> Value:
 
 def _stored(column: Column, value: float) -> float:
     source = units.unit(column.symbol, column.kind)
+    if column.quantity == STRESS:
+        return float(units.convert(value, source, units.unit("MPa", "stress")))
     return float(units.convert(value, source, units.unit(RESULTS[column.quantity].unit, column.kind)))
 
 
@@ -325,14 +360,16 @@ def _of_sample(
     filled = [(c, text) for c, text in filled if not _nothing(text, nulls)]
     oriented = sorted({c.orientation for c, _ in filled if c.orientation})
     both = len(oriented) > 1
-    own = [text for text in sample.words if not text.startswith(FLAGS)]
+    own = [text for text in sample.words if not text.startswith((FLAGS, FACTS))]
+    facts = _facts([text for text in sample.words if text.startswith(FACTS)])
     flags = [
         f for text in sample.words if text.startswith(FLAGS) for f in text.removeprefix(FLAGS).split("; ")
     ]
     description = " ".join(own)
     name = sample.name or ("" if sample.depth is None else f"{sample.depth:g}")
     made: list[Plug] = []
-    for orientation in oriented if both else (oriented[0] if oriented else "",):
+    alone = oriented[0] if oriented else facts["orientation"]
+    for orientation in oriented if both else (alone,):
         mine = [(c, t) for c, t in filled if not both or (c.orientation or HORIZONTAL) == orientation]
         whose = [file.meanings[c.place].laboratory for c, _ in mine] or [m.laboratory for m in file.meanings]
         elsewhere = {c.place for c, _ in filled} - {c.place for c, _ in mine}
@@ -349,15 +386,43 @@ def _of_sample(
                 sample=sample.name,
                 laboratory=laboratory or next((w for w in whose if w), "") or file.laboratory or NOT_STATED,
                 depth_m=depth_m,
+                depth_basis=facts["depth basis"],
+                source=facts["source"],
                 orientation=orientation,
+                facies=facts["facies"],
                 lithology=_lithology(description),
                 description=description,
                 row=sample.row,
                 entered=entered,
                 flags=list(flags),
-                values=[_value(c, text) for c, text in mine],
+                values=_values(mine),
             )
         )
+    return made
+
+
+def _facts(lines: Sequence[str]) -> dict[str, str]:
+    """What a line of facts says of a plug; else what conventional core analysis implies."""
+    made = {"source": "core", "depth basis": DEPTH_BASES[0], "orientation": "", "facies": ""}
+    for part in "; ".join(line.removeprefix(FACTS) for line in lines).split("; "):
+        name = next((n for n in made if part.startswith(f"{n} ")), "")
+        text = part.removeprefix(name).strip()
+        allowed = {"depth basis": DEPTH_BASES, "orientation": (HORIZONTAL, VERTICAL, OBLIQUE)}.get(name)
+        if name and text and (allowed is None or text in allowed):
+            made[name] = text
+    return made
+
+
+def _values(cells: Sequence[tuple[Column, str]]) -> list[Value]:
+    """The results in cells that are filled, each at the stress that stands beside it, if one does."""
+    made = [_value(c, text) for c, text in cells if c.quantity != STRESS]
+    for column, text in cells:
+        stress = _number(text) if column.quantity == STRESS else None
+        if stress is None or stress < 0:
+            continue
+        for value in made:
+            if value.stress_mpa is None and value.quantity.endswith(column.basis):
+                value.stress_mpa = _stored(column, stress)
     return made
 
 

@@ -993,6 +993,39 @@ def write_workbook(
     show.tell(f"Wrote {out}.")
 
 
+@write_app.command("las")
+def write_las(
+    well: Well,
+    out: OutFile,
+    version: Annotated[
+        str, typer.Option(metavar="2.0|3.0", help="3.0 holds texts, in sections for core.")
+    ] = "2.0",
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
+    """Write the results of a well as LAS."""
+    with _lab() as lab:
+        lab.write_las(well, out, version=version, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
+
+
+@write_app.command("spwla")
+def write_spwla(
+    well: Well,
+    out: OutFile,
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
+    """Write the results of a well in the SPWLA core-data format."""
+    with _lab() as lab:
+        lab.write_spwla(well, out, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
+
+
 @write_app.command("csv")
 def write_csv(
     well: Well,

@@ -24,6 +24,8 @@ MOST_CHARACTERS = 10_000  # of one line
 MOST_LINES = 1_000_000
 WIDTH, MARGIN = 12, 4  # of the columns of values, and of the blanks before them
 WELL, MEANINGS, INTERVAL, SAMPLE, WORDS, VALUES = 10, 15, 20, 30, 36, 40
+#: How lines of words begin that carry the doubts about a plug, and what else is known of it.
+FLAGS, FACTS = "flags: ", "plug: "
 _KNOWN = {WELL, MEANINGS, INTERVAL, SAMPLE, WORDS, VALUES}
 _SAVE = "ask the laboratory for the file as issued"
 _OPENING = re.compile(r" ?([1-9]\d?)((?: +\d{1,6}){0,4})\s*")
@@ -68,6 +70,7 @@ class SpwlaFile:
     heading: list[str] = field(default_factory=list)
     well: str = ""
     laboratory: str = ""
+    depth_unit: str = ""
     meanings: list[Meaning] = field(default_factory=list)
     intervals: list[str] = field(default_factory=list)
     samples: list[Sample] = field(default_factory=list)
@@ -220,7 +223,10 @@ def _take_heading(made: SpwlaFile, record: _Record) -> None:
     made.heading += [line.rstrip() for line in record.lines]
     if record.lines and not made.well:
         made.well = re.split(r"\s{2,}", record.lines[0].strip())[0]
-        made.laboratory = " ".join(record.lines[1].split()) if len(record.lines) > 1 else ""
+        second = record.lines[1].strip() if len(record.lines) > 1 else ""
+        made.laboratory = re.split(r"\s{2,}", second)[0]
+        unit = re.search(r"\bdepths? in (m|ft|met|feet)", " ".join(record.lines), re.IGNORECASE)
+        made.depth_unit = {"m": "m", "f": "ft"}[unit[1][0].lower()] if unit else ""
 
 
 def _take_meanings(made: SpwlaFile, record: _Record) -> None:
@@ -232,7 +238,8 @@ def _take_meanings(made: SpwlaFile, record: _Record) -> None:
             continue
         rest = line[codes.end() :].strip()
         parts = [p.strip() for p in re.split(r"\s{2,}", rest, maxsplit=1)]
-        if codes.end() == _LABORATORY and line[_TEXT:].strip():
+        told_by_columns = codes.end() == _LABORATORY and line[_TEXT:].strip()
+        if told_by_columns and (len(parts) == 1 or not line[_LABORATORY:_TEXT].strip()):
             parts = [line[_LABORATORY:_TEXT].strip(), line[_TEXT:].strip()]
         laboratory, text = parts if len(parts) == 2 else ("", parts[0])
         numbers = tuple(int(n) for n in codes.groups() if n is not None)

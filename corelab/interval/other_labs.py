@@ -11,7 +11,7 @@ import pandas as pd
 import sqlalchemy as sa
 
 from corelab.bench.outcome import STRESS_NOT_STATED
-from corelab.bench.reported import REPORTED
+from corelab.bench.reported import REPORTED, SUMMATION
 from corelab.errors import NotFound, did_you_mean, quoted
 from corelab.interval.stress import near
 from corelab.quantities import RESULTS
@@ -23,11 +23,11 @@ STATUS = REPORTED
 FLAG = "from another laboratory"
 NOT_IN_FILE = "not in the file"
 #: Of several of one quantity the first is shown.
-_BASES = {b: i for i, b in enumerate((REPORTED, "nitrogen", "air", "helium", ""))}
+_BASES = {SUMMATION: 1, "air": 1, "helium": 2, "": 3}
 _DIRECTIONS = {d: i for i, d in enumerate(("", *DIRECTIONS))}
 _PERMEABILITIES = ("gas permeability", "klinkenberg permeability")
 _SATURATIONS = {"oil saturation", "water saturation", "gas saturation"}
-#: No file of another laboratory tells these, nor is anything missed without them.
+#: Files seldom tell these, and nothing is missed without them.
 _UNTOLD = {"mean pressure", "slip factor"}
 
 
@@ -58,11 +58,15 @@ def rows(
     made: dict[str, Any] = {
         "well": well,
         "plug": plugs["name"],
-        "source": "core",
+        "source": plugs["source"],
         "laboratory": plugs["laboratory"],
-        "run": [run_at(d) for d in depths.tolist()],
+        "run": [
+            run_at(z) if basis == "driller" else ""
+            for z, basis in zip(depths.tolist(), plugs["depth_basis"], strict=True)
+        ],
         "depth [m]": depths,
-        "depth basis": "driller",
+        "depth basis": plugs["depth_basis"],
+        "facies": plugs["facies"],
         "orientation": plugs["orientation"],
         "lithology": plugs["lithology"],
         "status": STATUS,
@@ -76,7 +80,7 @@ def rows(
     )
     doubts = [[FLAG, *(text.split("; ") if text else ())] for text in plugs["flags"]]
     reasons: list[dict[str, list[str]]] = [{} for _ in doubts]
-    for quantity in (q for q in computed if q not in _UNTOLD):
+    for quantity in computed:
         chosen = _chosen(results[results["quantity"] == quantity], stress_mpa)
         values = np.full(len(plugs), np.nan)
         at = chosen["place"].to_numpy(dtype=np.intp)
@@ -99,7 +103,7 @@ def rows(
             reported[i] = True
             if reason:
                 reasons[i].setdefault(reason, []).append(quantity)
-        for i in np.flatnonzero(~reported).tolist():
+        for i in np.flatnonzero(~reported & (quantity not in _UNTOLD)).tolist():
             reasons[i].setdefault(NOT_IN_FILE, []).append(quantity)
     lines = [made[RESULTS[q].stored_heading] for q in _PERMEABILITIES]
     known = ~np.isnan(lines[0]) | ~np.isnan(lines[1])
@@ -116,7 +120,7 @@ def _chosen(candidates: pd.DataFrame, stress_mpa: float | None) -> pd.DataFrame:
         missing=candidates["value"].isna(),
         away=candidates["stress_mpa"].fillna(-1.0),
         by_direction=candidates["direction"].map(_DIRECTIONS).fillna(9),
-        by_basis=candidates["basis"].map(_BASES).fillna(9),
+        by_basis=candidates["basis"].map(_BASES).fillna(0),
     )
     if stress_mpa is not None:
         elsewhere = found["stressed"] & ~found["missing"] & ~near(found["stress_mpa"], stress_mpa)

@@ -368,7 +368,10 @@ other_plug = _table(
     _text("name_key"),
     _text("sample"),
     sa.Column("depth_m", Real, nullable=True),
+    _text("depth_basis"),
+    _text("source"),
     _text("orientation"),
+    _text("facies"),
     _text("lithology"),
     _text("description"),
     _text("flags"),
@@ -378,6 +381,7 @@ other_plug = _table(
     _check("name", "length(name) > 0"),
     _check("laboratory", "length(laboratory) > 0"),
     _check("depth_m", f"depth_m >= -{_LARGEST!r} AND depth_m <= {_LARGEST!r}"),
+    _check("depth_basis", "depth_basis IN ('driller', 'log')"),
     _check("orientation", "orientation IN ('', 'horizontal', 'vertical', 'oblique')"),
     sa.UniqueConstraint("other_file_id", "laboratory", "name_key"),
 )

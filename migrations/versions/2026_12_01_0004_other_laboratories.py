@@ -63,13 +63,17 @@ def upgrade() -> None:
         sa.Column("name_key", sa.Text(), nullable=False),
         sa.Column("sample", sa.Text(), nullable=False),
         sa.Column("depth_m", Real, nullable=True),
+        sa.Column("depth_basis", sa.Text(), nullable=False),
+        sa.Column("source", sa.Text(), nullable=False),
         sa.Column("orientation", sa.Text(), nullable=False),
+        sa.Column("facies", sa.Text(), nullable=False),
         sa.Column("lithology", sa.Text(), nullable=False),
         sa.Column("description", sa.Text(), nullable=False),
         sa.Column("flags", sa.Text(), nullable=False),
         sa.Column("row", sa.Integer(), nullable=False),
         sa.Column("entered", sa.Text(), nullable=False),
         sa.Column("digest", sa.Text(), nullable=False),
+        sa.CheckConstraint("depth_basis IN ('driller', 'log')", name=op.f("ck_other_plug_depth_basis")),
         sa.CheckConstraint(
             "orientation IN ('', 'horizontal', 'vertical', 'oblique')", name=op.f("ck_other_plug_orientation")
         ),
