@@ -306,8 +306,8 @@ def _with_others(
         return frame
     _place(theirs, depth)
     theirs = theirs.reindex(columns=frame.columns)
-    texts = [c for c in frame.columns if c in TEXT_COLUMNS]
-    theirs[texts] = theirs[texts].astype(object).fillna("")
+    for column in TEXT_COLUMNS & set(frame.columns):
+        theirs[column] = pd.Series(["" if pd.isna(text) else text for text in theirs[column]])
     if not len(frame):
         return theirs
     return pd.concat([frame, theirs], ignore_index=True)
