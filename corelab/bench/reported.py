@@ -228,7 +228,7 @@ def _quantity(text: str) -> tuple[str, str] | None:
         if has(r"\bsum"):
             return "porosity", SUMMATION
         return "porosity", next((route for route in _ROUTES if route in text), REPORTED)
-    if has(r"dens|\bg\.?d\b|\brho"):
+    if has(r"\bdens|\bden\b|\bg\.?d\b|\brho"):
         if has(r"grain|matrix|\bg\.?d\b|\bma\b"):
             return "grain density", REPORTED
         return ("bulk density", REPORTED) if has(r"bulk") and not has(r"satur|wet") else None
@@ -237,7 +237,7 @@ def _quantity(text: str) -> tuple[str, str] | None:
             if has(pattern):
                 return f"{word} saturation", REPORTED
         return None
-    if has(r"vol"):
+    if has(r"\bvol") and not has(r"compress"):
         for word in ("bulk", "grain", "pore"):
             if has(rf"\b{word}"):
                 return f"{word} volume", REPORTED
