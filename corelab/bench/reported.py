@@ -75,7 +75,7 @@ class Column:
     """One column of a file, understood; `symbol` is the unit, `assumed` where the file does not tell it."""
 
     place: int
-    text: str
+    laboratory: str
     quantity: str
     orientation: str = ""
     direction: str = ""
@@ -146,7 +146,14 @@ def plugs_of(file: SpwlaFile, *, laboratory: str, depth_unit: str, told: Callabl
             if filled:
                 told(f"{_shown(meaning)}: not understood; its {filled} values are kept as entered")
             continue
-        key = (column.quantity, column.orientation, column.direction, column.basis, column.stress_mpa)
+        key = (
+            column.laboratory,
+            column.quantity,
+            column.orientation,
+            column.direction,
+            column.basis,
+            column.stress_mpa,
+        )
         if key in taken:
             told(f"{_shown(meaning)}: a second column of the same; its {filled} values are kept as entered")
             continue
@@ -201,7 +208,7 @@ def _understood(place: int, meaning: Meaning) -> Column | None:
     if stress:
         unit = units.unit({"mpa": "MPa", "kpa": "kPa"}.get(stress[2].lower(), stress[2].lower()), "stress")
         stress_mpa = float(units.convert(float(stress[1]), unit, units.unit("MPa", "stress")))
-    return Column(place, meaning.text, quantity, orientation, direction, basis, stress_mpa)
+    return Column(place, meaning.laboratory, quantity, orientation, direction, basis, stress_mpa)
 
 
 def _quantity(text: str) -> tuple[str, str] | None:
@@ -352,14 +359,15 @@ def _of_sample(
     laboratory: str,
     depth_m: float | None,
 ) -> list[Plug]:
-    """The plugs of one sample: two where values of both orientations are entered.
+    """The plugs of one sample: two where values of both orientations are entered, those of each laboratory.
 
     What has no orientation belongs to the horizontal one, on which it is usually measured.
     """
     filled = [(c, sample.values[c.place]) for c in columns if c.place < len(sample.values)]
     filled = [(c, text) for c, text in filled if not _nothing(text, nulls)]
-    oriented = sorted({c.orientation for c, _ in filled if c.orientation})
-    both = len(oriented) > 1
+    oriented: dict[str, set[str]] = {}
+    for column, _ in filled:
+        oriented.setdefault(column.laboratory, set()).add(column.orientation)
     own = [text for text in sample.words if not text.startswith((FLAGS, FACTS))]
     facts = _facts([text for text in sample.words if text.startswith(FACTS)])
     flags = [
@@ -368,10 +376,12 @@ def _of_sample(
     description = " ".join(own)
     name = sample.name or ("" if sample.depth is None else f"{sample.depth:g}")
     made: list[Plug] = []
-    alone = oriented[0] if oriented else facts["orientation"]
-    for orientation in oriented if both else (alone,):
-        mine = [(c, t) for c, t in filled if not both or (c.orientation or HORIZONTAL) == orientation]
-        whose = [file.meanings[c.place].laboratory for c, _ in mine] or [m.laboratory for m in file.meanings]
+    told = facts["laboratory"] or next((m.laboratory for m in file.meanings if m.laboratory), "")
+    named = [(lab, sorted(there - {""})) for lab, there in (oriented or {told: {""}}).items()]
+    for origin, orientation, first in [(lab, o, all_of) for lab, all_of in named for o in all_of or [""]]:
+        both = len(first) > 1
+        mine = [(c, t) for c, t in filled if c.laboratory == origin]
+        mine = [(c, t) for c, t in mine if not both or (c.orientation or first[0]) == orientation]
         elsewhere = {c.place for c, _ in filled} - {c.place for c, _ in mine}
         if made:  # what belongs to neither stands with the first
             elsewhere |= {p for p in range(len(sample.values)) if p not in {c.place for c, _ in mine}}
@@ -384,11 +394,11 @@ def _of_sample(
             Plug(
                 name=name + orientation[0].upper() if both else name,
                 sample=sample.name,
-                laboratory=laboratory or next((w for w in whose if w), "") or file.laboratory or NOT_STATED,
+                laboratory=laboratory or origin or file.laboratory or NOT_STATED,
                 depth_m=depth_m,
                 depth_basis=facts["depth basis"],
                 source=facts["source"],
-                orientation=orientation,
+                orientation=orientation or facts["orientation"],
                 facies=facts["facies"],
                 lithology=_lithology(description),
                 description=description,
@@ -404,6 +414,7 @@ def _of_sample(
 def _facts(lines: Sequence[str]) -> dict[str, str]:
     """What a line of facts says of a plug; else what conventional core analysis implies."""
     made = {"source": "core", "depth basis": DEPTH_BASES[0], "orientation": "", "facies": ""}
+    made["laboratory"] = ""
     for part in "; ".join(line.removeprefix(FACTS) for line in lines).split("; "):
         name = next((n for n in made if part.startswith(f"{n} ")), "")
         text = part.removeprefix(name).strip()

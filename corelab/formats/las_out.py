@@ -195,9 +195,10 @@ def _las3(frame: pd.DataFrame, depth: str, heading: WellHeading) -> str:
         *_rows([where, where, *(cells[c] for c, *_ in curves)]),
         "~Log_Definition",
         _line("DEPT", unit, "", "depth of the plug's centre {F}"),
+        _line("SAMP", "", "", "number of the plug, its row in the core data {I}"),
         *(_line(m, u, "", f"{words} {{F}}") for _, m, u, words in numeric),
         "~Log_Data | Log_Definition",
-        *_rows([where, *(cells[c] for c, *_ in numeric)]),
+        *_rows([where, [str(n) for n in range(1, len(where) + 1)], *(cells[c] for c, *_ in numeric)]),
     ]
     return "\n".join(lines) + "\n"
 

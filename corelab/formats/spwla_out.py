@@ -40,7 +40,7 @@ _CODES = {
     ("grain density", "horizontal", ""): 2451,
 }
 _UNITS = {"porosity": ("%", 3084), "permeability": ("mD", 2031), "saturation": ("%", 3085)}
-_FACTS = ("source", "depth basis", "orientation", "facies")
+_FACTS = ("laboratory", "source", "depth basis", "orientation", "facies")
 _STRESSES = {"porosity stress": "porosity", "permeability stress": "permeability"}
 _NUMBERS = (*RESULTS, *_STRESSES)
 

@@ -1,10 +1,9 @@
-"""What another laboratory's file says: columns by their words, what stands for nothing, zeros, two plugs of one
-sample point.
+"""What another laboratory's file says: columns by their words, nulls, zeros, two plugs of one sample point.
 
 Published: the real plugs of well 7121/8-1 (Norwegian Offshore Directorate, NLOD 2.0). Their statistics were
 computed outside the project from the table that others parsed: kKl_h > 0 of 264 plugs: 249, arithmetic mean
-473.499, geometric 14.70235, harmonic 0.234817 mD, Cv 3.94663, mean porosity 16.0507 %; 246 pairs, geometric mean
-ratio 0.410126, median 0.524049, kv above kh in 55.
+473.499, geometric 14.70235, harmonic 0.234817 mD, Cv 3.94663, mean porosity 16.0507 %; 246 pairs, geometric
+mean ratio 0.410126, median 0.524049, kv above kh in 55.
 """
 
 from __future__ import annotations

@@ -1,11 +1,12 @@
 """Reading the SPWLA core-data format: the real file to its last row, other writers' ways, hostile files.
 
-Published: the file of well 7121/8-1 as its laboratory issued it (Norwegian Offshore Directorate, NLOD 2.0), held
-against the table that others parsed from it. The rest is written here, line by line.
+Published: the file of well 7121/8-1 as its laboratory issued it (Norwegian Offshore Directorate, NLOD 2.0),
+held against the table that others parsed from it. The rest is written here, line by line.
 """
 
 from __future__ import annotations
 
+import contextlib
 import csv
 import re
 from pathlib import Path
@@ -220,10 +221,8 @@ def test_a_file_that_is_not_there(tmp_path: Path) -> None:
 
 @given(st.binary(max_size=400))
 def test_any_bytes_are_read_or_refused(content: bytes) -> None:
-    try:
-        parsed("a.spwla", content)
-    except Unreadable as fault:
-        assert fault.found and fault.wanted and fault.action
+    with contextlib.suppress(Unreadable):
+        assert parsed("a.spwla", content).samples
 
 
 @settings(max_examples=300, deadline=None)
