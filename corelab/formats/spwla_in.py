@@ -13,7 +13,7 @@ import codecs
 import re
 from collections import Counter
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from corelab.errors import Refused, quoted
@@ -112,6 +112,7 @@ def parsed(name: str, content: bytes) -> SpwlaFile:
     strays: list[int] = []
     skipped: Counter[int] = Counter()
     open_samples: list[Sample] = []
+    places: list[int] = []  # of the meanings now in use among all of the file
     for record in _records(lines, strays):
         if not record.whole:
             made.notices.append(
@@ -121,14 +122,7 @@ def parsed(name: str, content: bytes) -> SpwlaFile:
         if record.kind == WELL:
             _take_heading(made, record)
         elif record.kind == MEANINGS:
-            if made.samples:
-                raise Unreadable(
-                    "a second list of what the values are, after samples",
-                    "one list before all samples",
-                    "split the file into one for each list",
-                    record.row,
-                )
-            _take_meanings(made, record)
+            places = _take_meanings(made, record)
         elif record.kind == INTERVAL:
             made.intervals += [line.strip() for line in record.lines]
         elif record.kind == SAMPLE:
@@ -140,7 +134,7 @@ def parsed(name: str, content: bytes) -> SpwlaFile:
             open_samples[-1].words += [line.strip() for line in record.lines if line.strip()]
         elif record.kind == VALUES:
             cut = not ended and record.row + len(record.lines) >= len(lines)
-            _take_values(made, record, open_samples, cut)
+            _take_values(made, record, open_samples, places, cut)
         else:
             skipped[record.kind] += 1
     for kind, times in sorted(skipped.items()):
@@ -221,20 +215,52 @@ def _opens(line: str) -> bool:
 
 def _take_heading(made: SpwlaFile, record: _Record) -> None:
     made.heading += [line.rstrip() for line in record.lines]
-    if record.lines and not made.well:
-        made.well = re.split(r"\s{2,}", record.lines[0].strip())[0]
+    well = re.split(r"\s{2,}", record.lines[0].strip())[0] if record.lines else ""
+    if made.well and well and made.well.casefold() != well.casefold():
+        raise Unreadable(
+            f"two wells, {quoted(made.well)} and {quoted(well)}",
+            "one well in a file",
+            "split the file into one for each well",
+            record.row,
+        )
+    if well and not made.well:
+        made.well = well
         second = record.lines[1].strip() if len(record.lines) > 1 else ""
         made.laboratory = re.split(r"\s{2,}", second)[0]
         unit = re.search(r"\bdepths? in (m|ft|met|feet)", " ".join(record.lines), re.IGNORECASE)
         made.depth_unit = {"m": "m", "f": "ft"}[unit[1][0].lower()] if unit else ""
 
 
-def _take_meanings(made: SpwlaFile, record: _Record) -> None:
+def _take_meanings(made: SpwlaFile, record: _Record) -> list[int]:
+    """Where each value of the samples that follow stands among the meanings of the file.
+
+    A file may say anew, core by core, what its values are; the same words mean the same again.
+    """
+    places: list[int] = []
+    for meaning in _meanings(made, record):
+        again = (
+            i
+            for i, known in enumerate(made.meanings)
+            if i not in places and replace(known, row=meaning.row) == meaning
+        )
+        place = next(again, len(made.meanings))
+        if place == len(made.meanings):
+            made.meanings.append(meaning)
+        places.append(place)
+    announced = record.counts[-1] if len(record.counts) > 1 else len(places)
+    if announced != len(places):
+        made.notices.append(
+            f"row {record.row}: record 15 announces {announced} values and means {len(places)}"
+        )
+    return places
+
+
+def _meanings(made: SpwlaFile, record: _Record) -> Iterator[Meaning]:
     for row, line in enumerate(record.lines, record.row + 1):
         codes = _MEANING.match(line)
         if codes is None:
             made.notices.append(f"row {row}: {quoted(line)} is no meaning of a value; taken as words alone")
-            made.meanings.append(Meaning(row, (), "", " ".join(line.split())))
+            yield Meaning(row, (), "", " ".join(line.split()))
             continue
         rest = line[codes.end() :].strip()
         parts = [p.strip() for p in re.split(r"\s{2,}", rest, maxsplit=1)]
@@ -243,12 +269,7 @@ def _take_meanings(made: SpwlaFile, record: _Record) -> None:
             parts = [line[_LABORATORY:_TEXT].strip(), line[_TEXT:].strip()]
         laboratory, text = parts if len(parts) == 2 else ("", parts[0])
         numbers = tuple(int(n) for n in codes.groups() if n is not None)
-        made.meanings.append(Meaning(row, numbers, " ".join(laboratory.split()), " ".join(text.split())))
-    announced = record.counts[-1] if len(record.counts) > 1 else len(made.meanings)
-    if announced != len(made.meanings):
-        made.notices.append(
-            f"row {record.row}: record 15 announces {announced} values and means {len(made.meanings)}"
-        )
+        yield Meaning(row, numbers, " ".join(laboratory.split()), " ".join(text.split()))
 
 
 def _sample(made: SpwlaFile, row: int, line: str) -> Sample:
@@ -264,8 +285,10 @@ def _sample(made: SpwlaFile, row: int, line: str) -> Sample:
     return Sample(row, line.rstrip(), depth, " ".join(rest), more)
 
 
-def _take_values(made: SpwlaFile, record: _Record, samples: list[Sample], cut: bool) -> None:
-    wanted = record.counts[1] if len(record.counts) > 1 else len(made.meanings)
+def _take_values(
+    made: SpwlaFile, record: _Record, samples: list[Sample], places: list[int], cut: bool
+) -> None:
+    wanted = record.counts[1] if len(record.counts) > 1 else len(places)
     each = [record.lines] if len(samples) == 1 else [[line] for line in record.lines]
     if len(each) != len(samples):
         made.notices.append(
@@ -292,11 +315,14 @@ def _take_values(made: SpwlaFile, record: _Record, samples: list[Sample], cut: b
                 f"row {record.row}: a second record of values of sample {quoted(sample.name)}; left out"
             )
             continue
-        if len(values) > len(made.meanings):
+        if len(values) > len(places):
             made.notices.append(
-                f"row {record.row}: {len(values) - len(made.meanings)} values without a meaning; left out"
+                f"row {record.row}: {len(values) - len(places)} values without a meaning; left out"
             )
-        sample.values = values[: len(made.meanings)]
+        if values:
+            sample.values = [""] * len(made.meanings)
+            for place, value in zip(places, values, strict=False):
+                sample.values[place] = value
 
 
 def _values(lines: Sequence[str], wanted: int, cut: bool) -> list[str]:

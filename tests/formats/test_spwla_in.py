@@ -84,7 +84,7 @@ def test_every_value_of_the_real_file_is_that_of_the_table_parsed_by_others(
         assert (sample.depth, sample.name) == (float(row["depth_m"]), row["sample"])
         words = " ".join(sample.words)
         assert words == row["desc"] or ("Å" in words and words.startswith(row["desc"].rstrip("Ã")))
-        values = [float(v) for v in sample.values] + [-1002.0] * (10 - len(sample.values))
+        values = [float(v or -1002.0) for v in sample.values]
         for name, value in zip(VALUES, values, strict=True):
             assert (value == -1002.0) if row[name] == "" else value == float(row[name])
             compared += row[name] != ""
@@ -97,7 +97,7 @@ def test_the_real_file_is_cut_short_and_that_is_said(real: SpwlaFile) -> None:
     (notice,) = real.notices
     assert "row 1856" in notice
     assert "'-1002.00', may be cut short" in notice
-    assert len(real.samples[-1].values) == 8
+    assert real.samples[-1].values[7:] == ["-1002.00000", "", ""]
 
 
 # -- other writers' ways ----------------------------------------------------------------------------------
@@ -159,6 +159,22 @@ def test_values_over_several_lines_and_several_samples_in_a_record() -> None:
     assert [s.values for s in of(HEADING + both).samples] == [["1", "2", "3"], ["4", "5", "6"]]
 
 
+def test_a_list_of_meanings_may_be_given_anew_for_each_core() -> None:
+    other = """\
+15     2    2
+          2451      1201  1086   0Bench Ltd           Grain Density, Hor.
+          1302      1103  3085   0Bench Ltd           CORE Oil Saturation
+"""
+    values = SAMPLE.replace("40     1    3", "40     1    2").replace("    18.44722", "")
+    file = of(HEADING + SAMPLE + HEADING[HEADING.index("15") :] + SAMPLE + other + values)
+    assert [m.text.split()[0] for m in file.meanings] == ["Klinkenberg", "Porosity,", "Grain", "CORE"]
+    assert [s.values for s in file.samples] == [
+        ["10.50000", "18.44722", "2.65100"], ["10.50000", "18.44722", "2.65100"],
+        ["", "", "10.50000", "2.65100"],
+    ]  # fmt: skip
+    assert file.notices == []
+
+
 def test_what_is_not_understood_is_named() -> None:
     odd = "50     1\n    something\nno record at all\n"
     notices = of(HEADING + odd + SAMPLE).notices
@@ -173,7 +189,7 @@ def test_what_is_not_understood_is_named() -> None:
 def test_a_value_that_the_end_of_the_file_may_have_cut_is_left_out() -> None:
     cut = HEADING + SAMPLE.rstrip("\n")[:-13]
     file = of(cut)
-    assert file.samples[0].values == ["10.50000"]
+    assert file.samples[0].values == ["10.50000", "", ""]
     assert "the file ends within the values" in file.notices[0]
 
 
@@ -203,7 +219,7 @@ def test_an_old_end_of_file_mark_is_no_line() -> None:
         ("~Version\nVERS. 2.0 : LAS\n", "first line"),
         ("10     1\n    W-1\n" + SAMPLE, "no record 15"),
         (HEADING, "no sample"),
-        (HEADING + SAMPLE + HEADING[HEADING.index("15") :] + SAMPLE, "a second list"),
+        (HEADING + SAMPLE + HEADING.replace("W-1", "W-2") + SAMPLE, "two wells"),
         (HEADING + "30     1\n" + "9" * (MOST_CHARACTERS + 1), "characters"),
         (HEADING + SAMPLE.replace("Sst", "S\x07st"), "control character"),
     ],

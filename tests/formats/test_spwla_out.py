@@ -35,7 +35,8 @@ def frame_of(rows: list[dict[str, Any]]) -> pd.DataFrame:
     frame = pd.DataFrame(rows, columns=columns)
     numbers = [c for c in columns if "[" in c]
     frame[numbers] = frame[numbers].astype(float)
-    frame[[c for c in columns if "[" not in c]] = frame[[c for c in columns if "[" not in c]].fillna("")
+    for column in (c for c in columns if "[" not in c):
+        frame[column] = ["" if pd.isna(text) else text for text in frame[column]]
     return frame
 
 
