@@ -19,7 +19,7 @@ from corelab.bench import load as loading
 from corelab.bench import settings as lab_settings
 from corelab.bench.parse import Row
 from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
-from corelab.interval import board, controlled, explain, life, recovery, select
+from corelab.interval import board, controlled, explain, life, other_labs, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, logs, migrate, schema, store
 from corelab.review import approve, entitled, issued, roles
@@ -30,6 +30,8 @@ from corelab.version import __version__
 if TYPE_CHECKING:
     import sqlalchemy as sa
 
+    from corelab.bench.other_labs import OtherLabReport
+    from corelab.formats.well_heading import WellHeading
     from corelab.interval.trend import Trends
     from corelab.review.verify import Verified
 
@@ -529,6 +531,7 @@ class Lab:
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             facts = {int(r["well_id"]): r for r in store.rows_of(store.in_force(connection, "wells"))}
+            others = store.other_plugs(connection)["well_id"].value_counts()
         rows = []
         for number, name in identities.names["well"].items():
             if store.name_key(name) == STANDARDS_WELL:
@@ -543,15 +546,17 @@ class Lab:
                     "depth unit": fact.get("depth_unit") or "",
                     "core runs": sum(o == number for o in identities.owners["run"].values()),
                     "plugs": sum(o == number for o in identities.owners["plug"].values()),
+                    "plugs of others": int(others.get(number, 0)),
                 }
             )
         rows.sort(key=lambda r: select.natural_key(str(r["well"])))
-        return pd.DataFrame(rows, columns=["well", "field", "job", "depth unit", "core runs", "plugs"])
+        columns = ["well", "field", "job", "depth unit", "core runs", "plugs", "plugs of others"]
+        return pd.DataFrame(rows, columns=columns)
 
     def plug_list(self, well: str) -> pd.DataFrame:
         """The plugs of a well; `standards` lists the check plugs."""
         frame = self.interval(well)
-        headings = ["plug", "source", "run", "orientation", "facies", "lithology"]
+        headings = ["plug", "source", "laboratory", "run", "orientation", "facies", "lithology"]
         depth = next(c for c in frame.columns if c.startswith("depth ["))
         if store.name_key(well) == STANDARDS_WELL:
             with self._reading() as connection:
@@ -568,9 +573,15 @@ class Lab:
         return frame[["plug", "source", depth, *headings[2:]]]
 
     def plug_show(self, well: str, plug: str) -> dict[str, pd.DataFrame]:
-        """All that is recorded of one plug: its entries with their numbers, and its results."""
+        """All that is recorded of one plug: its entries with their numbers, and its results.
+
+        Where another laboratory reports on a plug of this name, a part `of another laboratory` says what.
+        """
         with self._reading() as connection:
             identities = store.Identities.read(connection)
+            theirs = other_labs.shown(connection, select.well_id(identities, well), plug)
+            if len(theirs) and identities.find("plug", plug, select.well_id(identities, well)) is None:
+                return {"of another laboratory": theirs}
             number = select.plug_id(identities, well, plug)
             entries = life.entries_of_plugs(connection, [number])
             results = store.results(connection, [number])
@@ -608,7 +619,7 @@ class Lab:
         return {
             "entries": pd.DataFrame(shown, columns=columns),
             "results": there.rename(columns={"stress_mpa": "stress [MPa]", "value_limit": "limit"}),
-        }
+        } | ({"of another laboratory": theirs} if len(theirs) else {})
 
     def explain(
         self,
@@ -642,6 +653,11 @@ class Lab:
                     return explain.explain(
                         connection, identities, well, plug, result, stress_mpa=stress, direction=direction
                     )
+            owner = select.well_id(identities, well)
+            theirs = identities.find("plug", plug, owner) is None
+            if theirs and len(other_labs.found_plugs(connection, owner, plug)):
+                shown = identities.name("well", owner)
+                return other_labs.explained(connection, owner, shown, plug, explain.quantity_named(result))
             return explain.explain(
                 connection, identities, well, plug, result, stress_mpa=stress, direction=direction
             )
@@ -941,6 +957,129 @@ class Lab:
         ]
         return pd.DataFrame(shown, columns=columns)
 
+    # -- other laboratories' results ----------------------------------------------------------------------
+
+    def read_spwla(
+        self,
+        file: str | Path,
+        well: str,
+        *,
+        laboratory: str = "",
+        unit: str = "",
+        reason: str = "",
+        check: bool = False,
+    ) -> OtherLabReport:
+        """Take in another laboratory's results from a file in the SPWLA core-data format.
+
+        Parameters
+        ----------
+        well
+            Name of the well, which is made where it is new.
+        laboratory
+            Whose results they are; as the file says where empty.
+        unit
+            Of the file's depths, which it does not state: 'm' or 'ft'; the well's own where empty.
+        reason
+            Why it takes the place of a file that was read before.
+        check
+            Only report what would be done.
+
+        Raises
+        ------
+        Refused
+            If the file cannot be read, or holds other content than the one read before, without a reason.
+        """
+        from corelab.bench import other_labs as taking
+        from corelab.bench.reported import plugs_of
+        from corelab.formats.spwla_in import read_spwla
+
+        _refuse_standards(well)
+        if not store.name_key(well):
+            raise Usage("Name the well: --well W.")
+        self._require_file()
+        found = read_spwla(Path(file))
+        report = taking.OtherLabReport(found.file, well.strip(), checked_only=check)
+        report.notices += found.notices
+        act = "read in logs and other laboratories' results"
+        with self._writing(act, keep=not check) as (connection, person):
+            identities = store.Identities.read(connection)
+            number = identities.add("well", well)
+            report.well = identities.name("well", number)
+            if identities.added:
+                report.notices.append(f"{quoted(report.well)} is a new well")
+            if found.well and _same_letters(found.well) != _same_letters(well):
+                report.notices.append(f"the file names the well {quoted(found.well)}")
+            stored = store.settings(connection)
+            facts = store.in_force(connection, "wells", [number], by="well_id")
+            depths = select.depth_unit(facts, stored, unit or found.depth_unit)
+            if not (unit or found.depth_unit):
+                report.notices.append(f"depths are taken as {depths}; say --unit if they are in another")
+            plugs = plugs_of(
+                found, laboratory=laboratory.strip(), depth_unit=depths, told=report.notices.append
+            )
+            report.laboratories = sorted({p.laboratory for p in plugs})
+            report.samples, report.plugs = len(found.samples), len(plugs)
+            report.results = sum(v.value is not None for p in plugs for v in p.values)
+            own = select.laboratory_of(connection, facts, stored)
+            report.unchanged, before = taking.superseded(
+                connection, number, found, plugs, own, reason.strip()
+            )
+            if report.unchanged:
+                return report
+            if before is not None:
+                report.supersedes = f"file {before}"
+            change = store.Change.begin(connection)
+            change.identities(identities)
+            kept = taking.keep(change, number, found, plugs, before, report.notices)
+            detail = {"file": found.file, "well": report.well, "number": kept, "plugs": len(plugs)}
+            detail |= {"laboratories": report.laboratories}
+            seal = self._close(change, person, "read spwla", detail, reason.strip())
+            report.seal = "" if check else seal
+        return report
+
+    def read_list(self, well: str = "") -> pd.DataFrame:
+        """The files of other laboratories' results, of all wells or of one, with what became of them."""
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well) if well else None
+            files = store.other_files(connection, number)
+            plugs = store.other_plugs(connection, number)
+        of_file = plugs.groupby("other_file_id")
+        rows = []
+        for row in store.rows_of(files[files["state"] == "read"]):
+            there = of_file.get_group(row["id"]) if row["id"] in of_file.groups else plugs.iloc[:0]
+            state = "in force"
+            if row["superseded_state"]:
+                gone = row["superseded_state"] == "withdrawn"
+                state = "withdrawn" if gone else f"superseded by {int(row['superseded_by'])}"
+            rows.append(
+                {
+                    "number": row["id"],
+                    "well": identities.name("well", int(row["well_id"])),
+                    "file": row["file"],
+                    "laboratory": ", ".join(sorted(set(there["laboratory"]))),
+                    "plugs": len(there),
+                    "state": state,
+                    "read on": str(row["at"])[:16].replace("T", " "),
+                    "read by": row["person"],
+                }
+            )
+        columns = ["number", "well", "file", "laboratory", "plugs", "state", "read on", "read by"]
+        return pd.DataFrame(rows, columns=columns)
+
+    def read_withdraw(self, number: int, reason: str) -> str:
+        """Take a file of another laboratory's results out of force; returns its name."""
+        from corelab.bench import other_labs as taking
+
+        _require_reason(reason, "A withdrawal")
+        with self._writing("withdraw readings") as (connection, person):
+            change = store.Change.begin(connection)
+            row = taking.withdraw(change, number)
+            self._close(
+                change, person, "read withdraw", {"file": row["file"], "withdrawn": number}, reason.strip()
+            )
+        return str(row["file"])
+
     # -- what leaves the lab ------------------------------------------------------------------------------
 
     def write_workbook(
@@ -976,6 +1115,49 @@ class Lab:
         from corelab.formats.tables_out import write_parquet
 
         return self._issue_table("parquet", write_parquet, well, Path(out), filters, recipient, reason)
+
+    def write_las(
+        self,
+        well: str,
+        out: str | Path,
+        *,
+        version: str = "2.0",
+        recipient: str = "",
+        reason: str = "",
+        **filters: Any,
+    ) -> Path:
+        """Write the interval of a well as LAS: 2.0 on irregular depths, or 3.0 with its core sections."""
+        from corelab.formats import las_out
+
+        if version not in las_out.VERSIONS:
+            raise Usage(f"--version is {' or '.join(las_out.VERSIONS)}, not {quoted(version)}.")
+
+        heading = self._well_heading(well)
+
+        def write(part: Path, frame: pd.DataFrame) -> None:
+            las_out.write_las(part, frame, heading, version)
+
+        return self._issue_table("las", write, well, Path(out), filters, recipient, reason)
+
+    def write_spwla(
+        self, well: str, out: str | Path, *, recipient: str = "", reason: str = "", **filters: Any
+    ) -> Path:
+        """Write the interval of a well in the SPWLA core-data format."""
+        from corelab.formats.spwla_out import write_spwla
+
+        heading = self._well_heading(well)
+
+        def write(part: Path, frame: pd.DataFrame) -> None:
+            write_spwla(part, frame, heading)
+
+        return self._issue_table("spwla", write, well, Path(out), filters, recipient, reason)
+
+    def _well_heading(self, well: str) -> WellHeading:
+        """The facts of a well that a file for other programs opens with."""
+        from corelab.reports.well import heading
+
+        with self._reading() as connection:
+            return heading(connection, store.Identities.read(connection), well)
 
     def _issue_table(
         self,
@@ -1126,7 +1308,7 @@ class Lab:
         _refuse_standards(well)
         identities = store.Identities.read(connection)
         if everything:
-            frame = select.interval(connection, identities, well, select.Filters())
+            frame = select.interval(connection, identities, well, select.Filters(own_only=True))
             plugs = frame.loc[frame["status"] != "approved", "plug"].tolist()
             number = select.well_id(identities, well)
             ids = [identities.ids["plug"][number, store.name_key(p)] for p in plugs]
@@ -1331,6 +1513,11 @@ def _is_day(text: str) -> bool:
         return date.fromisoformat(text).isoformat() == text
     except ValueError:
         return False
+
+
+def _same_letters(name: str) -> str:
+    """A name without case, blanks and marks, for comparing how two files write it."""
+    return "".join(c for c in name.casefold() if c.isalnum())
 
 
 def _require_reason(reason: str, what: str) -> None:

@@ -49,12 +49,12 @@ export_app = typer.Typer(
 partner_app = typer.Typer(
     no_args_is_help=True, rich_markup_mode=None, help="Partners, and what they are entitled to."
 )
-read_app = typer.Typer(
-    no_args_is_help=True, rich_markup_mode=None, help="Logs, and other laboratories' results, taken in."
-)
-app.add_typer(read_app, name="read")
 app.add_typer(partner_app, name="partner")
+read_app = typer.Typer(
+    no_args_is_help=True, rich_markup_mode=None, help="What comes in: logs, other laboratories' results."
+)
 app.add_typer(write_app, name="write")
+app.add_typer(read_app, name="read")
 app.add_typer(export_app, name="export")
 
 _DECIMALS = {
@@ -367,11 +367,12 @@ def plug_show(well: Well, plug: Plug, form: TableOrJson = "table") -> None:
     _one_of("--format", form, "table", "json")
     with _lab() as lab:
         found = lab.plug_show(well, plug)
-    results = found["results"]
-    results.insert(1, "unit", [RESULTS[q].unit if q in RESULTS else "" for q in results["quantity"]])
-    if form == "table":
-        found["entries"] = found["entries"].drop(columns=["measured on", "measured by"])
-    _show_parts(found, form, wrap="entry")
+    if "results" in found:
+        results = found["results"]
+        results.insert(1, "unit", [RESULTS[q].unit if q in RESULTS else "" for q in results["quantity"]])
+        if form == "table":
+            found["entries"] = found["entries"].drop(columns=["measured on", "measured by"])
+    _show_parts(found, form, wrap="entry" if "entries" in found else "as entered")
 
 
 @plug_app.command("explain")
@@ -1013,6 +1014,61 @@ def methods(
         typer.echo(f"{'safety':36}  The usual cautions of the bench")
 
 
+@read_app.command("spwla")
+def read_spwla(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="A file in the SPWLA core-data format.")],
+    well: Annotated[str, typer.Option(metavar="WELL", help="The well it is of; made where it is new.")],
+    laboratory: Annotated[
+        str, typer.Option(metavar="NAME", help="Whose results they are; else as the file says.")
+    ] = "",
+    unit: Annotated[
+        str, typer.Option(metavar="m|ft", help="Unit of the file's depths; else the well's own.")
+    ] = "",
+    check: Annotated[bool, typer.Option("--check", help="Only report what would be done.")] = False,
+    reason: Reason = "",
+) -> None:
+    """Take in another laboratory's results; they are kept apart from the lab's own, with their origin."""
+    with _lab() as lab:
+        done = lab.read_spwla(file, well, laboratory=laboratory, unit=unit, reason=reason, check=check)
+    if done.notices:
+        show.tell(f"What to know of {done.file}:")
+        show.print_lines([f"  {notice}" for notice in done.notices], 40)
+    show.tell(
+        f"{done.samples} samples, {done.plugs} plugs, {done.results} results of "
+        f"{', '.join(done.laboratories)}."
+    )
+    if done.unchanged:
+        show.tell("Nothing changed: the record has all of this already.")
+    elif done.checked_only:
+        show.tell("No problem found; nothing was written.")
+    else:
+        instead = f" in the place of {done.supersedes}" if done.supersedes else ""
+        show.tell(f"Kept under well {done.well}{instead}. Seal {done.seal}")
+
+
+@read_app.command("list")
+def read_list(
+    well: Annotated[str, typer.Argument(metavar="[WELL]", help="Only this well.")] = "",
+    form: TableOrJson = "table",
+) -> None:
+    """The files of other laboratories' results that were read, and what became of them."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        frame = lab.read_list(well)
+    _show(frame, form)
+
+
+@read_app.command("withdraw")
+def read_withdraw(
+    number: Annotated[int, typer.Argument(metavar="NUMBER", help="Number of the file, from 'read list'.")],
+    reason: Reason = "",
+) -> None:
+    """Take a file of another laboratory's results out of force, as when it was read into the wrong well."""
+    with _lab() as lab:
+        name = lab.read_withdraw(number, reason)
+    show.tell(f"Withdrew {name}; it stays in the history.")
+
+
 @write_app.command("workbook")
 def write_workbook(
     well: Well,
@@ -1025,6 +1081,39 @@ def write_workbook(
     with _lab() as lab:
         lab.write_workbook(well, out, recipient=partner, unit=unit, reason=reason)
     show.tell(f"Wrote {out}.")
+
+
+@write_app.command("las")
+def write_las(
+    well: Well,
+    out: OutFile,
+    version: Annotated[
+        str, typer.Option(metavar="2.0|3.0", help="3.0 holds texts, in sections for core.")
+    ] = "2.0",
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
+    """Write the results of a well as LAS."""
+    with _lab() as lab:
+        lab.write_las(well, out, version=version, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
+
+
+@write_app.command("spwla")
+def write_spwla(
+    well: Well,
+    out: OutFile,
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    where: Where = "",
+    reason: Reason = "",
+) -> None:
+    """Write the results of a well in the SPWLA core-data format."""
+    with _lab() as lab:
+        lab.write_spwla(well, out, recipient=partner, unit=unit, where=where, reason=reason)
+        show.tell(f"Wrote {out}. Seal {lab.seal()}")
 
 
 @write_app.command("csv")

@@ -82,7 +82,7 @@ def explain(
     NotFound
         If the result is not a result, or this plug has none at the stress and direction asked for.
     """
-    quantity = _quantity(result)
+    quantity = quantity_named(result)
     number = select.plug_id(identities, well, plug)
     stored = store.settings(connection)
     tray = gather.gather(connection, [number], stored)
@@ -131,7 +131,7 @@ def explain(
     }
 
 
-def _quantity(result: str) -> str:
+def quantity_named(result: str) -> str:
     wanted = " ".join(result.split()).casefold().split(" [")[0]
     if wanted in RESULTS:
         return wanted

@@ -71,6 +71,13 @@ def of_well(connection: sa.Connection, identities: store.Identities, well: int) 
         words = f"issued {export['file']} (export {export['id']}, issue {export['issue']})"
         words += f" to {export['recipient']}" if export["recipient"] else ""
         lines.append(_line(export | {"command": f"write {export['kind']}"}, words))
+    for file in store.rows_of(store.other_files(connection, well)):
+        words = f"read {file['file']} of another laboratory (file {file['id']})"
+        if file["state"] == "withdrawn":
+            words = f"withdrew file {int(file['supersedes'])} of another laboratory, {file['file']}"
+        elif file["supersedes"] == file["supersedes"]:
+            words += f" in the place of file {int(file['supersedes'])}"
+        lines.append(_line(file, words))
     lines.sort(key=lambda line: line["event"])
     return pd.DataFrame(lines, columns=list(COLUMNS))
 

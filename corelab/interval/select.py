@@ -19,6 +19,7 @@ from corelab.bench.outcome import STRESS_NOT_STATED
 from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
+from corelab.interval import other_labs
 from corelab.interval import where as conditions
 from corelab.interval.controlled import doubts_of
 from corelab.interval.frozen import released_words, shown_results
@@ -97,6 +98,7 @@ class Filters:
     stress_mpa: float | None = None
     with_uncertainty: bool = False
     poisson_ratio: float | None = None  # the stress asked for is uniaxial; else hydrostatic
+    own_only: bool = False  # without other laboratories' plugs
 
 
 def natural_key(name: str) -> tuple[Any, ...]:
@@ -176,6 +178,8 @@ def interval(
             raise Usage(f"Poisson's ratio lies from 0 to below 0.5; found {filters.poisson_ratio:g}.")
         stress_mpa = equivalent_stress_mpa(stress_mpa, filters.poisson_ratio)
     _add_results(frame, connection, identities, stored, stress_mpa)
+    if not filters.own_only:
+        frame = _with_others(frame, connection, identities, number, filters.depth, stress_mpa)
     if unit != "m":
         metre, target = units.unit("m", "length"), units.unit(unit, "length")
         for column in DEPTH_COLUMNS:
@@ -200,6 +204,15 @@ def interval(
     return shown.rename(columns={c: c.replace("[m]", f"[{unit}]") for c in DEPTH_COLUMNS})
 
 
+def laboratory_of(connection: sa.Connection, well_facts: pd.DataFrame, stored: Mapping[str, str]) -> str:
+    """The laboratory whose own results of a well these are: of its job, else of the settings."""
+    laboratory = lab_settings.value(stored, "laboratory name")
+    if len(well_facts) and not pd.isna(well_facts["job_id"].iloc[-1]):
+        jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
+        laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
+    return laboratory
+
+
 def _latest_text(frame: pd.DataFrame, by: str, column: str) -> dict[int, str]:
     return {int(i): v or "" for i, v in zip(frame[by], frame[column], strict=True)}
 
@@ -215,9 +228,7 @@ def _facts(
     ids = plugs_of_well(identities, well)
     plugs = store.in_force(connection, "plugs", ids)
     descriptions = store.in_force(connection, "descriptions", ids)
-    runs = store.in_force(
-        connection, "core runs", [n for n, o in identities.owners["run"].items() if o == well], "run_id"
-    )
+    runs = _runs(connection, identities, well)
     guns = [n for n, o in identities.owners["gun_run"].items() if o == well]
     shots = store.in_force(connection, "sidewall shots", guns, "gun_run_id")
     lithology = _latest_text(descriptions, "plug_id", "lithology")
@@ -227,14 +238,8 @@ def _facts(
             shots["gun_run_id"], shots["shot"], shots["tool"], shots["depth_basis"], strict=True
         )
     }
-    laboratory = lab_settings.value(stored, "laboratory name")
-    if len(well_facts) and not pd.isna(well_facts["job_id"].iloc[-1]):
-        jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
-        laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
-    spans = [
-        (float(top), float(base), int(run))
-        for top, base, run in zip(runs["top_depth_m"], runs["base_depth_m"], runs["run_id"], strict=True)
-    ]
+    laboratory = laboratory_of(connection, well_facts, stored)
+    spans = _spans(runs)
     rows: list[dict[str, Any]] = []
     for plug in plugs.to_dict("records"):
         source, basis, run = plug["from"], "driller", ""
@@ -270,6 +275,55 @@ def _facts(
     columns = ["plug_id", "run_id", "gun_run_id", *REGISTERED]
     numbers = dict.fromkeys(("run_id", "gun_run_id", "depth [m]", "log depth [m]"), "float64")
     return pd.DataFrame(rows, columns=columns).astype(numbers)
+
+
+def _runs(connection: sa.Connection, identities: store.Identities, well: int) -> pd.DataFrame:
+    numbers = [n for n, o in identities.owners["run"].items() if o == well]
+    return store.in_force(connection, "core runs", numbers, "run_id")
+
+
+def _spans(runs: pd.DataFrame) -> list[tuple[float, float, int]]:
+    return [
+        (float(top), float(base), int(run))
+        for top, base, run in zip(runs["top_depth_m"], runs["base_depth_m"], runs["run_id"], strict=True)
+    ]
+
+
+def _with_others(
+    frame: pd.DataFrame,
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: int,
+    depth: str,
+    stress_mpa: float | None,
+) -> pd.DataFrame:
+    """The frame with other laboratories' plugs below, on the same headings."""
+    spans = _spans(_runs(connection, identities, well))
+
+    def run_at(depth_m: float) -> str:
+        run = _run_at(spans, depth_m)
+        return "" if run is None else identities.name("run", run)
+
+    theirs = other_labs.rows(
+        connection,
+        well,
+        identities.name("well", well),
+        stress_mpa,
+        _UNDER_STRESS,
+        [conditions.bare(c) for c in COMPUTED],
+        run_at,
+    )
+    if not len(theirs):
+        return frame
+    runs = [identities.find("run", run, well) if run else None for run in theirs["run"]]
+    theirs = theirs.assign(run_id=pd.Series(runs, dtype="float64").to_numpy(), gun_run_id=np.nan)
+    _place(theirs, depth, logs.shifts(connection, well))
+    theirs = theirs.reindex(columns=frame.columns)
+    for column in TEXT_COLUMNS & set(frame.columns):
+        theirs[column] = pd.Series(["" if pd.isna(text) else text for text in theirs[column]])
+    if not len(frame):
+        return theirs
+    return pd.concat([frame, theirs], ignore_index=True)
 
 
 def _run_at(spans: Sequence[tuple[float, float, int]], depth_m: float) -> int | None:

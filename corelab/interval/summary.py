@@ -16,7 +16,7 @@ from corelab.bench import compute
 from corelab.bench import settings as lab_settings
 from corelab.control.charts import OUT_OF_CONTROL, OVERDUE
 from corelab.errors import NotFound, Usage, quoted
-from corelab.interval import select
+from corelab.interval import other_labs, select
 from corelab.interval import where as conditions
 from corelab.records import store
 from corelab.science import averages, heterogeneity
@@ -159,7 +159,8 @@ def _prepared(
     facts = store.in_force(connection, "plugs", select.plugs_of_well(identities, number))
     own = facts.assign(key=[store.name_key(identities.name("plug", int(p))) for p in facts["plug_id"]])
     own = own.set_index("key")
-    keys = frame["plug"].map(store.name_key)
+    ours = frame["status"] != other_labs.STATUS
+    keys = frame["plug"].map(store.name_key).where(ours, "")
     companion = {
         key: identities.name("plug", int(p)) for key, p in own["companion_of_id"].items() if not pd.isna(p)
     }
@@ -507,42 +508,43 @@ def _vertical(
         (lab, store.name_key(p)): kh
         for p, lab, kh in zip(horizontal["plug"], horizontal["laboratory"], horizontal["k"], strict=True)
     }
+    there = set(zip(part["laboratory"], part["plug"].map(store.name_key), strict=True))
     depths = horizontal["depth"].to_numpy(dtype=np.float64)
-    ratios: list[float] = []
-    pairs = 0
+    pairs: list[tuple[float, float]] = []
     for row in across.to_dict("records"):
         lab = row["laboratory"]
         kh = by_name.get((lab, store.name_key(row["companion"]))) if row["companion"] else None
-        kh = kh or by_name.get((lab, _sibling(row["plug"])))
-        if kh is None and len(depths):
+        sibling = (lab, _sibling(row["plug"]))
+        kh = kh or by_name.get(sibling)
+        if kh is None and sibling not in there and len(depths):
             near = np.where(horizontal["laboratory"] == lab, np.abs(depths - row["depth_m"]), np.inf)
             nearest = int(np.argmin(near))
             kh = float(horizontal["k"].iloc[nearest]) if near[nearest] <= _SAME_POINT_M else None
         if kh:
-            ratios.append(row[_K] / kh)
-            pairs += 1
+            pairs.append((row[_K], kh))
     made: dict[str, Any] = {
         "vertical to horizontal ratio": None,
         "vertical to horizontal convention": "geometric mean of the ratios of plugs of one sample point",
-        "vertical to horizontal pairs": pairs,
+        "vertical to horizontal pairs": len(pairs),
         "vertical to horizontal of layers": None,
     }
-    if ratios:
-        r = np.array(ratios)
+    across_md: Array = across[_K].to_numpy(dtype=np.float64)
+    along_md: Array = horizontal["k"].to_numpy(dtype=np.float64)
+    if pairs:
+        across_md, along_md = np.array(pairs).T
+        r = across_md / along_md
         made["vertical to horizontal ratio"] = float(np.exp(np.log(r).mean()))
         made["vertical to horizontal median"] = float(np.median(r))
         made["vertical above horizontal"] = int((r > 1).sum())
-    if len(horizontal):
-        kh = horizontal["k"].to_numpy(dtype=np.float64)
-        arithmetic = float(averages.means(kh, np.ones(len(kh))).arithmetic)
-        kv = across[_K].to_numpy(dtype=np.float64)
-        layers = kv if len(kv) else kh
+    if len(along_md):
+        arithmetic = float(averages.means(along_md, np.ones(len(along_md))).arithmetic)
+        layers = across_md if len(across_md) else along_md
         made["vertical to horizontal of layers"] = (
             float(averages.means(layers, np.ones(len(layers))).harmonic) / arithmetic
         )
         made["vertical to horizontal of layers convention"] = (
-            f"harmonic mean of {'vertical' if len(kv) else 'the same'} plugs over arithmetic mean of "
-            "horizontal ones"
+            f"harmonic mean of {'vertical' if len(across_md) else 'the same'} plugs over arithmetic mean of "
+            f"horizontal ones{' of the same pairs' if pairs else ''}"
         )
     return made
 

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 from scipy import stats
 
 from corelab.errors import Impossible, NotFound, Usage, did_you_mean, quoted
-from corelab.interval import select
+from corelab.interval import other_labs, select
 from corelab.interval import where as conditions
 from corelab.records import store
 from corelab.science import rock_types, trends
@@ -410,7 +410,7 @@ def _usable(
     if asked is not None and "orientation" in conditions.named(asked):
         across &= False
     reasons = {
-        "duplicate of another plug": frame["plug"].isin(repeats),
+        "duplicate of another plug": frame["plug"].isin(repeats) & (frame["status"] != other_labs.STATUS),
         "vertical or oblique (name the orientation in --where to take them)": across,
         "permeability estimated from texture": frame["permeability basis"] == "texture",
         "no permeability": k.isna(),

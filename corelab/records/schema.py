@@ -17,7 +17,7 @@ from corelab.quantities import Range
 from corelab.sheets import SHEETS, Column, Sheet
 
 #: The newest migration; `corelab setup` brings a database there.
-SCHEMA = "0004"
+SCHEMA = "0005"
 WITHDRAWAL = "withdrawal"
 
 metadata = sa.MetaData(
@@ -377,6 +377,77 @@ partner = _table(
     _check("name", "length(name) > 0"),
 )
 
+#: Each file of another laboratory's results, byte for byte. One that supersedes another takes its place, or
+#: with `state` withdrawn takes it out of force. `heading` is what the file says of the well and its values.
+other_file = _table(
+    "other_file",
+    _id(),
+    _event(),
+    _to("well.id", "well_id"),
+    _text("state"),
+    sa.Column("supersedes", sa.Integer, sa.ForeignKey("other_file.id"), nullable=True),
+    _text("file"),
+    _text("heading"),
+    _text("notices"),
+    sa.Column("content", sa.LargeBinary, nullable=False),
+    *_digest("content_digest"),
+    *_digest(),
+    sa.UniqueConstraint("supersedes"),
+    _check("state", "state IN ('read', 'withdrawn')"),
+    _check("withdrawn", "state = 'read' OR supersedes IS NOT NULL"),
+    _check("supersedes", "supersedes IS NULL OR supersedes < id"),
+)
+
+#: A plug that another laboratory reports on: kept apart from the lab's own, and never the same identity.
+other_plug = _table(
+    "other_plug",
+    _id(),
+    _event(),
+    _to("other_file.id", "other_file_id", index=False),
+    _text("laboratory"),
+    _text("name"),
+    _text("name_key"),
+    _text("sample"),
+    sa.Column("depth_m", Real, nullable=True),
+    _text("depth_basis"),
+    _text("source"),
+    _text("orientation"),
+    _text("facies"),
+    _text("lithology"),
+    _text("description"),
+    _text("flags"),
+    sa.Column("row", sa.Integer, nullable=False),
+    _text("entered"),
+    *_digest(),
+    _check("name", "length(name) > 0"),
+    _check("laboratory", "length(laboratory) > 0"),
+    _check("depth_m", f"depth_m >= -{_LARGEST!r} AND depth_m <= {_LARGEST!r}"),
+    _check("depth_basis", "depth_basis IN ('driller', 'log')"),
+    _check("orientation", "orientation IN ('', 'horizontal', 'vertical', 'oblique')"),
+    sa.UniqueConstraint("other_file_id", "laboratory", "name_key"),
+)
+
+#: One of its results, or why there is none.
+other_result = _table(
+    "other_result",
+    _id(),
+    _event(),
+    _to("other_plug.id", "other_plug_id"),
+    _text("quantity"),
+    _text("direction"),
+    _text("basis"),
+    sa.Column("stress_mpa", Real, nullable=True),
+    sa.Column("value", Real, nullable=True),
+    _text("value_limit", nullable=True),
+    _text("flags"),
+    _text("reason"),
+    *_digest(),
+    _check("value", "(value IS NOT NULL) <> (length(reason) > 0)"),
+    _check("size", f"value >= -{_LARGEST!r} AND value <= {_LARGEST!r}"),
+    _check("stress_mpa", f"stress_mpa >= 0.0 AND stress_mpa <= {_LARGEST!r}"),
+    _check("value_limit", "value_limit IN ('below', 'above')"),
+)
+
 #: Tables of which no row is ever changed or removed, in the order in which an event's rows are digested.
 APPEND_ONLY: tuple[sa.Table, ...] = (
     event,
@@ -398,5 +469,8 @@ APPEND_ONLY: tuple[sa.Table, ...] = (
     partner,
     log_curve,
     depth_shift,
+    other_file,
+    other_plug,
+    other_result,
     *SHEET_TABLES.values(),
 )

@@ -398,6 +398,54 @@ def export_row(connection: sa.Connection, number: int) -> dict[str, Any] | None:
     return None if row is None else dict(row)
 
 
+def other_files(connection: sa.Connection, well_id: int | None = None) -> pd.DataFrame:
+    """The files of other laboratories' results, oldest first, with their events, without their contents.
+
+    `superseded_by` is NaN for one in force; a withdrawal is a row of its own.
+    """
+    table, event, newer = schema.other_file, schema.event, schema.other_file.alias("newer")
+    query = (
+        sa.select(
+            *(c for c in table.c if c.name not in {"content", "digest"}),
+            newer.c.id.label("superseded_by"),
+            newer.c.state.label("superseded_state"),
+            event.c.at,
+            event.c.person,
+            event.c.command,
+            event.c.reason,
+        )
+        .join(event, event.c.number == table.c.event)
+        .outerjoin(newer, newer.c.supersedes == table.c.id)
+        .order_by(table.c.id)
+    )
+    return frame_of(connection, query if well_id is None else query.where(table.c.well_id == well_id))
+
+
+def other_plugs(connection: sa.Connection, well_id: int | None = None) -> pd.DataFrame:
+    """The plugs of other laboratories' files that are in force, with `file` and `well_id`, in their order."""
+    table, file, newer = schema.other_plug, schema.other_file, schema.other_file.alias("newer")
+    query = (
+        sa.select(*(c for c in table.c if c.name != "digest"), file.c.file, file.c.well_id)
+        .join(file, file.c.id == table.c.other_file_id)
+        .where(~sa.exists(sa.select(newer.c.id).where(newer.c.supersedes == file.c.id)))
+        .order_by(table.c.id)
+    )
+    return frame_of(connection, query if well_id is None else query.where(file.c.well_id == well_id))
+
+
+def other_results(connection: sa.Connection, well_id: int) -> pd.DataFrame:
+    """The results in the files of a well, superseded ones too, in their order."""
+    result, plug, file = schema.other_result, schema.other_plug, schema.other_file
+    query = (
+        sa.select(*(c for c in result.c if c.name not in {"id", "event", "digest"}))
+        .join(plug, plug.c.id == result.c.other_plug_id)
+        .join(file, file.c.id == plug.c.other_file_id)
+        .where(file.c.well_id == well_id)
+        .order_by(result.c.id)
+    )
+    return frame_of(connection, query)
+
+
 def entry_row(connection: sa.Connection, number: int) -> dict[str, Any] | None:
     """One entry with its typed values, and whether it is in force."""
     row = (

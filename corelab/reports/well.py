@@ -11,7 +11,8 @@ import pandas as pd
 import sqlalchemy as sa
 
 from corelab.bench import settings as lab_settings
-from corelab.interval import life, recovery, select
+from corelab.formats.well_heading import WellHeading
+from corelab.interval import life, other_labs, recovery, select
 from corelab.records import history, store
 from corelab.reports.workbook import TableSheet, WellReport
 from corelab.review import entitled
@@ -63,6 +64,11 @@ def report(
             "Percussion sidewall plugs: the impact of the bullet can have changed porosity and permeability; "
             "lithology and saturations stay useful (common practice)."
         )
+    if (results["status"] == other_labs.STATUS).any():
+        remarks.append(
+            "What another laboratory reported is shown as it reported it, under its name; nothing of it was "
+            "measured or approved here."
+        )
     return WellReport(
         well=identities.name("well", number),
         cover=_cover(connection, identities, number, fact, stored, unit, runs, results, person, entries)
@@ -98,6 +104,29 @@ def _tables(issue: Issuing | None, results: pd.DataFrame) -> list[TableSheet]:
             )
         )
     return sheets
+
+
+def heading(connection: sa.Connection, identities: store.Identities, well: str) -> WellHeading:
+    """The facts of a well with which a file for other programs opens."""
+    number = select.well_id(identities, well)
+    facts = store.in_force(connection, "wells", [number], by="well_id")
+    fact = _last(facts)
+    job: dict[str, Any] = {}
+    if fact and not pd.isna(fact.get("job_id")):
+        job = _last(store.in_force(connection, "jobs", [int(fact["job_id"])], by="job_id"))
+    runs = recovery.core_runs(connection, identities, number, "m").iloc[:-1]
+    spans = zip(runs["top depth [m]"], runs["base depth [m]"], strict=True)
+    return WellHeading(
+        well=identities.name("well", number),
+        company=job.get("client") or "",
+        field=fact.get("field") or "",
+        country=fact.get("country") or "",
+        identifier=fact.get("unique_well_identifier") or "",
+        laboratory=select.laboratory_of(connection, facts, store.settings(connection)),
+        date=history.now_utc()[:10],
+        datum=fact.get("depth_datum") or "",
+        runs_m=tuple((float(top), float(base)) for top, base in spans),
+    )
 
 
 def _cover(
@@ -157,6 +186,7 @@ def _standing(
         "approved": "approved",
         "newer waits": "approved, and something newer waits",
         "computed": "not reviewed",
+        other_labs.STATUS: "of another laboratory, as reported",
     }
     newest = store.approvals(connection, plug_ids)
     by = sorted(set(newest.loc[newest["verdict"] == "approved", "person"]))

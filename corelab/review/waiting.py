@@ -61,7 +61,7 @@ def waiting(
         By plug, what control says against its results.
     """
     number = select.well_id(identities, well)
-    shown = select.interval(connection, identities, well, select.Filters(unit=unit))
+    shown = select.interval(connection, identities, well, select.Filters(unit=unit, own_only=True))
     ids = [identities.ids["plug"][number, store.name_key(name)] for name in shown["plug"]]
     shown.insert(0, "plug_id", ids)
     results = store.results(connection, ids)

@@ -667,3 +667,71 @@ def test_output_is_utf_8_whatever_the_terminal(demo: Path, corelab: Corelab):
     done = process("setting", "laboratory name", PYTHONIOENCODING="ascii", LC_ALL="C", PYTHONUTF8="0")
     assert done.returncode == 0
     assert "Skarvhølm 井" in done.stdout.decode("utf-8")
+
+
+# -- exchange with others ----------------------------------------------------------------------------------
+
+ELSEWHERE = """\
+10     2
+    W-9                                     Nowhere                                 18Feb09
+    Elsewhere Ltd
+15     2    2
+             1         1  2031   0Elsewhere Ltd       Klinkenberg permeability, Hor.
+             2         2  9999   0Elsewhere Ltd       Something else
+30     1
+     1000.25     0.00   1
+40     1    2
+        10.50000     3.00000
+"""
+
+
+def test_other_laboratories_results_come_in_and_go_out(demo: Path, corelab: Corelab):
+    Path("theirs.spwla").write_text(ELSEWHERE)
+    ran = corelab("read", "spwla", "theirs.spwla", "--well", "X/1", "--check")
+    assert ran.status == 0 and "nothing was written" in ran.err and ran.out == ""
+    assert corelab("plug", "list", "X/1").status == 1
+    ran = corelab("read", "spwla", "theirs.spwla", "--well", "X/1")
+    assert ran.status == 0
+    assert "'Something else' (codes 2 2 9999 0): not understood" in ran.err
+    assert "the file names the well 'W-9'" in ran.err
+    assert "1 samples, 1 plugs, 1 results of Elsewhere Ltd." in ran.err
+    assert "Nothing changed" in corelab("read", "spwla", "theirs.spwla", "--well", "x/1").err
+    (row,) = corelab("interval", "X/1", "--where", "laboratory = 'elsewhere ltd'", "--format", "json").rows
+    assert (row["plug"], row["klinkenberg permeability [mD]"], row["status"]) == ("1", 10.5, "reported")
+    assert "X/1" in [r["well"] for r in corelab("well", "list", "--format", "json").rows]
+    assert "Elsewhere Ltd" in corelab("plug", "show", "X/1", "1").out
+    assert (
+        "reported by Elsewhere Ltd" in corelab("plug", "explain", "X/1", "1", "klinkenberg permeability").out
+    )
+    for words in (["las"], ["las", "--version", "3.0"], ["spwla"], ["csv"], ["parquet"]):
+        out = f"out.{words[0]}"
+        ran = corelab("write", *words, "X/1", "--out", out)
+        assert ran.status == 0 and f"Wrote {out}. Seal " in ran.err
+        assert Path(out).stat().st_size > 100
+    Path("theirs.spwla").write_text(ELSEWHERE.replace("10.5", "11.5"))
+    ran = corelab("read", "spwla", "theirs.spwla", "--well", "X/1")
+    assert ran.status == 1 and "--reason" in ran.err
+    assert corelab("read", "spwla", "theirs.spwla", "--well", "X/1", "--reason", "better").status == 0
+    states = [r["state"] for r in corelab("read", "list", "X/1", "--format", "json").rows]
+    assert states == ["superseded by 2", "in force"]
+    assert corelab("read", "withdraw", "2").status == 2
+    assert corelab("read", "withdraw", "2", "--reason", "wrong well").status == 0
+    assert corelab("interval", "X/1", "--format", "json").rows == []
+    assert corelab("verify").status == 0
+
+
+@pytest.mark.parametrize(
+    ("words", "status"),
+    [
+        (["read", "spwla", "none.spwla", "--well", "W"], 1),
+        (["read", "spwla", "lab.db", "--well", "W"], 1),
+        (["read", "spwla", "none.spwla"], 2),
+        (["write", "las", "QB-1", "--version", "1.2", "--out", "a.las"], 2),
+        (["write", "las", "QB-9", "--out", "a.las"], 1),
+        (["write", "spwla", "QB-1", "--where", "porosity > 2", "--out", "a.spwla"], 1),
+        (["read", "withdraw", "9", "--reason", "none"], 1),
+    ],
+)
+def test_what_cannot_be_exchanged(demo: Path, corelab: Corelab, words: list[str], status: int):
+    assert corelab(*words).status == status
+    assert not list(Path().glob("a.*"))

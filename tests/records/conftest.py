@@ -96,8 +96,30 @@ def fill(lab: Lab) -> None:
         }
         sent |= {"request": "{}", "shown": "{}", "content": b"a,b\r\n", "content_digest": "1" * 64}
         change.rows(schema.export, [sent])
-        entitled = {"id": 1, "name": "A partner", "wells": "[]", "columns": "[]", "units": "[]"}
+        entitled = {"id": 1, "name": "A partner", "wells": '["W-1"]', "columns": "[]", "units": "[]"}
         change.rows(schema.partner, [entitled])
+        theirs = {"id": 1, "well_id": well, "state": "read", "supersedes": None, "file": "a.spwla"}
+        theirs |= {"heading": "{}", "notices": "[]", "content": b"10     1\n", "content_digest": "2" * 64}
+        gone = theirs | {"id": 2, "state": "withdrawn", "supersedes": 1}
+        change.rows(schema.other_file, [theirs, gone])
+        reported = {"id": 1, "other_file_id": 1, "laboratory": "Elsewhere", "name": "1H", "name_key": "1h"}
+        reported |= {"sample": "1", "depth_m": 1000.0, "depth_basis": "driller", "source": "core"}
+        reported |= {
+            "orientation": "horizontal",
+            "facies": "",
+            "lithology": "sandstone",
+            "description": "Sst.",
+        }
+        change.rows(schema.other_plug, [reported | {"flags": "", "row": 5, "entered": "{}"}])
+        value = {"id": 1, "other_plug_id": 1, "quantity": "porosity", "direction": "", "basis": "reported"}
+        value |= {"stress_mpa": 20.0, "value": 0.2, "value_limit": "below", "flags": "", "reason": ""}
+        change.rows(schema.other_result, [value])
+        curve = {"id": 1, "well_id": well, "log": "GR", "file": "a.las", "content_digest": "3" * 64}
+        curve |= {"mnemonic": "GR", "unit": "gAPI", "quantity": "gamma", "description": "gamma"}
+        change.rows(schema.log_curve, [curve | {"depths": "[1.0]", "readings": "[60.0]"}])
+        moved = {"id": 1, "run_id": 1, "gun_run_id": None, "log_curve_id": 1, "shift_m": 1.5}
+        moved |= {"uncertainty_m": 0.03, "correlation": 0.9, "certain": 1, "basis": "matched"}
+        change.rows(schema.depth_shift, [moved | {"detail": "{}"}])
         change.close(person=person, command="decide", program_version="0", detail={})
 
 

@@ -42,6 +42,7 @@ def rows_of(connection: sa.Connection, table: str, order: str = "id") -> list[di
 ORDER = [
     "job", "well", "plug", "run", "gun_run", "instrument", "person", "person_role", "setting", "entry",
     "credential", "approval", "approved_result", "control_release", "export", "partner",
+    "log_curve", "depth_shift", "other_file", "other_plug", "other_result",
 ]  # fmt: skip
 
 
@@ -254,7 +255,8 @@ def test_an_alteration_is_seen(unguarded: sa.Connection, change: Change) -> None
 
 def test_a_tail_cut_off_cleanly_leaves_a_whole_chain_but_another_seal(unguarded: sa.Connection) -> None:
     kept = history.last_seal(unguarded)
-    for table in ("credential", "approved_result", "approval", "control_release", "export", "partner"):
+    decided = ("credential", "approved_result", "approval", "control_release", "export", "partner")
+    for table in (*decided, "depth_shift", "log_curve", "other_result", "other_plug", "other_file"):
         unguarded.exec_driver_sql(f"DELETE FROM {table} WHERE event = 6")
     for table in ("masses", "jobs"):
         unguarded.exec_driver_sql(f"DELETE FROM {table} WHERE id IN (SELECT id FROM entry WHERE event = 5)")
