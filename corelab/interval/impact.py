@@ -1,0 +1,604 @@
+"""Percussion plugs of a well: the evidence for and against damage by the bullet, and the likelihood of it.
+
+`Evidence` is what the record holds of a well, as arrays; `assess` weighs it. Rotary and core plugs are the
+references: what they say of a plug never rests on the plug itself.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from corelab.science import impact as science
+from corelab.science import texture
+
+Array = NDArray[np.float64]
+Mask = NDArray[np.bool_]
+Texts = NDArray[Any]
+
+PERCUSSION = "percussion sidewall"
+REFERENCES = ("core", "rotary sidewall")
+#: Marks that keep a core or rotary plug from serving as a reference.
+_DAMAGED = frozenset({"powdered", "cracked", "crumbled", "disked"})
+TERMS = ("permeability", "density log", "neighbours", "packing", "fines", "condition")
+
+#: Fewest undamaged plugs for a trend of permeability (common practice).
+FEWEST = 8
+#: A plug that its density contradicts counts half: mud or poor cleaning moves porosity too (assumed).
+DOUBTED = 0.5
+#: Porosity of the whole facies, far from the plug, counts half: beds differ (assumed).
+FAR = 0.5
+#: How far neighbours of a bed are asked, and how their weight falls (assumed; beds are metres thick).
+NEIGHBOURS_M, FALL_M = 3.0, 1.0
+#: Half the height over which the log is averaged: core is compared with logs at 0.3 to 0.6 m.
+HALF_HEIGHT_M = 0.3
+#: Scatter of plug porosity about the log before any plug is compared: 2 porosity units (judgement in the
+#: trade: 2 to 3), worth four degrees of freedom (assumed).
+LOG_SCATTER_FRAC, LEVEL_FREEDOM, LEVEL_PLUGS = 0.02, 4.0, 0.25
+#: Ambient over in-situ porosity, before any plug is compared: 1 to 3 porosity units in soft sand, less in hard.
+AMBIENT_FRAC = (0.005, 0.020)
+#: Scatter of porosity in a bed, and of the share of fines in a facies, before any plug is compared (assumed).
+BED_SCATTER_FRAC, FINES_SCATTER_FRAC = 0.02, 0.03
+#: Share of the difference from the log that neighbours repeat, with too few plugs to tell (assumed).
+SHARED = 0.5
+#: Log-odds of soft rock by firmness; by porosity, its middle and its step (assumed).
+SOFT_BY_FIRMNESS: Mapping[str, float] = {"loose": 3.0, "friable": 2.0, "firm": -0.5, "hard": -3.0}
+SOFT_MIDDLE_FRAC, SOFT_STEP_FRAC, SOFT_MOST = 0.22, 0.03, 2.0
+SOFT_LIMIT = 3.0
+MATRIX_G_CM3, FLUID_G_CM3 = 2.65, 1.0
+#: Washed out beyond the bit by so much, or corrected by more: the pad has lost the wall (common practice).
+WASHOUT_MM, CORRECTION_G_CM3 = 38.0, 0.10
+#: A grain density off its facies by more than this, and beyond its scatter (assumed).
+OFF_DENSITY_G_CM3, OFF_DENSITY_T = 0.03, 3.0
+#: The sand limit, and the sieves that come near it (mm).
+FINES_MM, FINES_WITHIN_MM = 0.0625, (0.053, 0.080)
+
+
+@dataclass(frozen=True, slots=True)
+class DensityLog:
+    """The bulk density log of a well on log depth; `bad` where the hole does not let the pad touch rock."""
+
+    depth_m: Array
+    density_g_cm3: Array
+    bad: Mask
+    name: str = "density log"
+
+
+@dataclass(frozen=True, slots=True)
+class Evidence:
+    """What the record holds of the plugs of a well: one element a plug, NaN or empty where not known.
+
+    `log_permeability` is log10 of *measured* Klinkenberg permeability [mD]; `reason_permeability` says why it
+    is not there.
+    """
+
+    source: Texts
+    depth_m: Array
+    facies: Texts
+    horizontal: Mask
+    duplicate: Mask
+    porosity_frac: Array
+    grain_density_g_cm3: Array
+    log_permeability: Array
+    reason_permeability: Texts
+    firmness: Texts
+    condition: Texts
+    sorting_phi: Array
+    fines_frac: Array
+    log: DensityLog | None = None
+
+    def __len__(self) -> int:
+        return len(self.source)
+
+
+@dataclass(slots=True)
+class Found:
+    """One kind of evidence for the judged plugs: a difference from the references, and its scale."""
+
+    difference: Array
+    scale: Array
+    freedom: Array
+    count: NDArray[np.intp]
+    label: Texts
+    weight: Array
+    reason: Texts
+    more: dict[str, Array] = field(default_factory=dict)
+
+    @classmethod
+    def none(cls, n: int) -> Found:
+        return cls(
+            np.full(n, np.nan),
+            np.ones(n),
+            np.full(n, science.MOST_FREEDOM),
+            np.zeros(n, dtype=np.intp),
+            np.full(n, "", dtype=object),
+            np.ones(n),
+            np.full(n, "", dtype=object),
+        )
+
+
+@dataclass(frozen=True, slots=True)
+class Assessment:
+    """The likelihood for each judged plug (places in the evidence), and what it rests on."""
+
+    place: NDArray[np.intp]
+    likelihood_frac: Array
+    verdict: Texts
+    direction: Texts
+    soft_share: Array
+    assessed: Mask
+    coverage: Array
+    weighed: science.Weighed
+    adjustment: Array
+    found: Mapping[str, Found]
+    prior_frac: float
+    evidence: Evidence
+
+
+def assess(
+    evidence: Evidence,
+    prior_frac: float,
+    *,
+    blind: bool = False,
+    recalibration: science.Recalibration | None = None,
+) -> Assessment:
+    """Weigh the evidence for percussion plugs; `blind`: for core and rotary plugs instead, as if shot.
+
+    A core or rotary plug judged blind is compared with the others, never with itself.
+    """
+    judged = np.flatnonzero(
+        np.isin(evidence.source, REFERENCES) & ~evidence.duplicate & evidence.horizontal
+        if blind
+        else evidence.source == PERCUSSION
+    )
+    rock = _Rock(evidence, judged)
+    n = judged.size
+    porosity = evidence.porosity_frac[judged]
+    permeability = rock.permeability()
+    log, difference = rock.density_log()
+    found = {
+        "permeability": permeability,
+        "density log": log,
+        "neighbours": rock.neighbours(log.difference, difference),
+        "packing": rock.packing(),
+        "fines": rock.fines(),
+        "condition": rock.condition(),
+    }
+    grains = rock.grain_density()
+    off = (np.abs(grains.difference) > OFF_DENSITY_G_CM3) & (
+        np.abs(grains.difference) > OFF_DENSITY_T * grains.scale
+    )
+    for name in ("permeability", "density log", "neighbours", "packing"):
+        found[name].weight = np.where(off, DOUBTED * found[name].weight, found[name].weight)
+    found["grain density"] = grains
+    grains.more["off"] = off.astype(np.float64)
+    slope = permeability.more["slope"]
+    changes = science.damage(np.where(np.isnan(porosity), SOFT_MIDDLE_FRAC, porosity), slope, rock.soft_share)
+    weighed = science.weigh(_terms(found, porosity, changes), changes)
+    assessed = np.isfinite(np.stack([found[t].difference for t in TERMS], axis=1))
+    adjust = np.zeros(n)
+    if recalibration is not None:
+        adjust = recalibration.intercept + (recalibration.slope - 1.0) * weighed.total
+        adjust = np.where(assessed.any(axis=1), adjust, 0.0)
+    likelihood = science.likelihood_frac(prior_frac, weighed.total + adjust)
+    verdict = science.verdicts(likelihood, assessed.any(axis=1))
+    kinds = np.array(science.KINDS, dtype=object)[np.argmax(weighed.kinds, axis=1)] if n else np.zeros(0)
+    direction = np.where((verdict == "unlikely") | (verdict == "not assessed"), "none", kinds)
+    return Assessment(
+        judged,
+        np.asarray(likelihood),
+        verdict,
+        direction,
+        rock.soft_share,
+        assessed.any(axis=1),
+        assessed.mean(axis=1),
+        weighed,
+        adjust,
+        found,
+        prior_frac,
+        evidence,
+    )
+
+
+def _terms(found: Mapping[str, Found], porosity: Array, changes: science.Damage) -> list[science.Term]:
+    """The fit of each kind of evidence to no damage and to each change."""
+    dphi, decades = changes.porosity_change_frac, changes.permeability_change_decades
+    terms = []
+
+    def wide(values: Array) -> Array:
+        return values[:, np.newaxis]
+
+    def add(name: str, sound: Array, damaged: Array) -> None:
+        terms.append(science.Term(name, sound, damaged, found[name].weight))
+
+    k = found["permeability"]
+    slope = np.nan_to_num(k.more["slope"])
+    sound_slide = np.hypot(science.SOUND_DECADES, slope * science.SOUND_FRAC)
+    zero = np.zeros(1)
+    add(
+        "permeability",
+        science.permeability_fit(k.difference, np.hypot(k.scale, sound_slide), k.freedom, slope, zero, zero),
+        science.permeability_fit(
+            wide(k.difference),
+            np.hypot(wide(k.scale), changes.width_decades),
+            wide(k.freedom),
+            wide(slope),
+            dphi,
+            decades,
+        ),
+    )
+    d = found["density log"]
+    add(
+        "density log",
+        science.density_fit(d.difference, np.hypot(d.scale, science.SOUND_FRAC), d.freedom, zero),
+        science.density_fit(wide(d.difference), wide(d.scale), wide(d.freedom), dphi),
+    )
+    e = found["neighbours"]
+    shared = e.more["shared"]
+    add(
+        "neighbours",
+        science.neighbours_fit(
+            e.difference, np.hypot(e.scale, (1.0 - shared) * science.SOUND_FRAC), e.freedom, shared, zero
+        ),
+        science.neighbours_fit(wide(e.difference), wide(e.scale), wide(e.freedom), wide(shared), dphi),
+    )
+    limit = found["packing"].more["limit"]
+    add(
+        "packing",
+        science.packing_fit(porosity, limit, zero),
+        science.packing_fit(wide(porosity), wide(limit), dphi),
+    )
+    f = found["fines"]
+    most = np.array([science.FINES_ADDED_FRAC[kind] for kind in science.KINDS])[changes.kind]
+    reach = np.array([science.MOST_CHANGE_FRAC[kind] for kind in science.KINDS])[changes.kind]
+    added = most * np.abs(dphi) / reach
+    add(
+        "fines",
+        science.fines_fit(f.difference, f.scale, f.freedom, zero),
+        science.fines_fit(wide(f.difference), wide(f.scale), wide(f.freedom), added),
+    )
+    mark = found["condition"].label.astype(np.str_)
+    by_kind = np.stack([science.condition_fit(mark, kind) for kind in science.KINDS], axis=1)
+    add("condition", science.condition_fit(mark, "sound"), by_kind[:, changes.kind])
+    return terms
+
+
+class _Rock:
+    """The judged plugs among their references."""
+
+    def __init__(self, evidence: Evidence, judged: NDArray[np.intp]) -> None:
+        e = self.evidence = evidence
+        self.judged, self.n = judged, judged.size
+        marks = np.array([bool(_DAMAGED & _words(text)) for text in e.condition], dtype=np.bool_)
+        self.reference = np.isin(e.source, REFERENCES) & ~e.duplicate & e.horizontal & ~marks
+        self.log_frac, self.log_roughness = _log_porosity(e.log, e.depth_m, MATRIX_G_CM3)
+        self.own_soft = _by_firmness(e.firmness), _by_porosity(e.porosity_frac)
+        self.soft_log_odds = self._soft()
+        self.soft_share = 1.0 / (1.0 + np.exp(-self.soft_log_odds[judged]))
+        self.rock_class = self.soft_log_odds > 0.0
+
+    def _soft(self) -> Array:
+        """Log-odds that the rock of each plug is soft, from others of its facies and bed where possible."""
+        e, (firmness, porosity) = self.evidence, self.own_soft
+        by_log = np.nan_to_num(_by_porosity(self.log_frac))
+        own = np.nan_to_num(firmness) + np.nan_to_num(porosity)
+        soft = np.where(self.reference, own, np.nan_to_num(firmness) / 2.0 + by_log)
+        known = self.reference & (np.isfinite(firmness) | np.isfinite(porosity))
+        others = np.flatnonzero(~self.reference)
+        if others.size and known.any():
+            near = np.abs(e.depth_m[others, np.newaxis] - e.depth_m[known])
+            same = (e.facies[others, np.newaxis] == e.facies[known]) & (e.facies[others] != "")[:, np.newaxis]
+            fall = np.exp(-np.nan_to_num(near, nan=np.inf) / NEIGHBOURS_M)
+            weight = np.where(same, 0.02 + fall, 0.0)
+            alone = weight.sum(axis=1) == 0.0
+            weight[alone] = np.where(near[alone] < NEIGHBOURS_M, fall[alone], 0.0)
+            total = weight.sum(axis=1)
+            mean = weight @ own[known] / np.where(total > 0.0, total, 1.0)
+            soft[others] = np.where(total > 0.0, mean + 0.5 * by_log[others], soft[others])
+        return np.clip(soft, -SOFT_LIMIT, SOFT_LIMIT)
+
+    def groups(self, usable: Mask, fewest: int) -> list[tuple[NDArray[np.intp], NDArray[np.intp], str]]:
+        """Judged plugs (places among them) with the references that speak of them, and what these are called.
+
+        References of the same facies and rock class where there are enough, else of the rock class.
+        """
+        e, found = self.evidence, []
+        facies, soft = e.facies[self.judged], self.rock_class[self.judged]
+        pool = self.reference & usable
+        for name, is_soft in dict.fromkeys(zip(facies.tolist(), soft.tolist(), strict=True)):
+            at = np.flatnonzero((facies == name) & (soft == is_soft))
+            of_class = pool & (self.rock_class == is_soft)
+            own = of_class & (e.facies == name)
+            if name and np.count_nonzero(own) >= FEWEST:
+                found.append((at, np.flatnonzero(own), name))
+            elif np.count_nonzero(of_class) >= fewest:
+                found.append((at, np.flatnonzero(of_class), "soft rock" if is_soft else "hard rock"))
+        return found
+
+    def _put(
+        self,
+        into: Found,
+        at: NDArray[np.intp],
+        fit: NDArray[np.intp],
+        values: Array,
+        predicted: science.Prediction,
+        own: science.Prediction,
+        label: str,
+    ) -> None:
+        """Differences from what others predict: `predicted` (one a plug or one for all), or `own` in the fit."""
+        place = {int(plug): i for i, plug in enumerate(fit)}
+        inside = np.array([place.get(int(p), -1) for p in self.judged[at]], dtype=np.intp)
+        part = inside >= 0
+        for name, target in (("centre", None), ("scale", into.scale), ("freedom", into.freedom)):
+            chosen = np.array(np.broadcast_to(getattr(predicted, name), at.shape))
+            chosen[part] = getattr(own, name)[inside[part]]
+            if target is None:
+                into.difference[at] = values[at] - chosen
+            else:
+                target[at] = np.minimum(chosen, science.MOST_FREEDOM) if name == "freedom" else chosen
+        into.count[at] = fit.size - part
+        into.label[at] = label
+
+    def permeability(self) -> Found:
+        """Measured permeability against the trend of undamaged plugs of the same facies or rock class."""
+        e = self.evidence
+        found = Found.none(self.n)
+        found.more["slope"] = np.full(self.n, np.nan)
+        phi, log_k = e.porosity_frac, e.log_permeability
+        usable = np.isfinite(phi) & np.isfinite(log_k)
+        found.reason[:] = f"fewer than {FEWEST} undamaged plugs with porosity and measured permeability"
+        for at, fit, label in self.groups(usable, FEWEST):
+            fit = _without_strays(phi, log_k, fit)
+            if np.ptp(phi[fit]) == 0.0:
+                continue
+            line = science.predict_line(phi[fit], log_k[fit], np.nan_to_num(phi[self.judged[at]]))
+            if not np.all(line.own.scale > 0.0):
+                continue
+            self._put(found, at, fit, log_k[self.judged], line.predicted, line.own, label)
+            found.more["slope"][at] = line.slope
+        there = usable[self.judged]
+        found.difference[~there] = np.nan
+        reason = np.where(np.isnan(phi[self.judged]), "porosity not known", e.reason_permeability[self.judged])
+        found.reason[~there] = reason[~there]
+        return found
+
+    def density_log(self) -> tuple[Found, Array]:
+        """Plug porosity against the density log, centred on the same of undamaged plugs.
+
+        Also the same difference for every plug of the well as a reference sees it (NaN where not known).
+        """
+        e = self.evidence
+        found, whole = Found.none(self.n), np.full(len(e), np.nan)
+        difference = e.porosity_frac - self.log_frac
+        usable = np.isfinite(difference)
+        for at, fit, label in self.groups(usable, 0):
+            matrix = _matrix(e.grain_density_g_cm3, fit)
+            if matrix != MATRIX_G_CM3:
+                log_frac, _ = _log_porosity(e.log, e.depth_m, matrix)
+                difference = e.porosity_frac - log_frac
+            soft = bool(self.rock_class[self.judged[at[0]]])
+            rough = self.log_roughness[fit]
+            scale = LOG_SCATTER_FRAC
+            for _ in range(3):
+                weights = scale**2 / (scale**2 + rough**2)
+                predicted, own = science.predict_level(
+                    difference[fit], weights, AMBIENT_FRAC[soft], LOG_SCATTER_FRAC, LEVEL_PLUGS, LEVEL_FREEDOM
+                )
+                scale = float(predicted.scale) / np.sqrt(1.0 + 1.0 / (LEVEL_PLUGS + weights.sum()))
+            self._put(found, at, fit, difference[self.judged], predicted, own, label)
+            found.scale[at] = np.hypot(found.scale[at], self.log_roughness[self.judged[at]])
+            whole[fit] = difference[fit] - own.centre
+        there = usable[self.judged]
+        found.difference[~there] = np.nan
+        found.reason[~there] = "no density log at its depth"
+        if e.log is not None:
+            washed = np.isnan(self.log_frac) & ~np.isnan(_log_porosity(e.log, e.depth_m, MATRIX_G_CM3, True)[0])
+            found.reason[washed[self.judged]] = "density log not used: hole washed out"
+        found.reason[np.isnan(e.porosity_frac[self.judged])] = "porosity not known"
+        return found, whole
+
+    def neighbours(self, gap: Array, gap_of_references: Array) -> Found:
+        """Plug porosity against core and rotary plugs of its bed, else of its facies.
+
+        What the log told of already (`gap`, and the same of each reference) is taken off: the share of it that
+        comes again is the slope of one difference on the other among the references.
+        """
+        e = self.evidence
+        found = Found.none(self.n)
+        found.more["shared"], found.more["near"] = np.zeros(self.n), np.zeros(self.n)
+        phi = e.porosity_frac
+        found.reason[:] = "no core or rotary plug of its facies or rock class"
+        for at, fit, label in self.groups(np.isfinite(phi), 2):
+            of_fit = _from_neighbours(e.depth_m, phi, fit, fit)
+            expected = _from_neighbours(e.depth_m, phi, fit, self.judged[at])
+            few = np.count_nonzero(of_fit.near) < 2
+            for near, with_log in ((True, True), (True, False), (False, True), (False, False)):
+                here = ((expected.near & (not few)) == near) & (np.isfinite(gap[at]) == with_log)
+                if not here.any():
+                    continue
+                residual = phi[fit] - (of_fit.local_frac if near else of_fit.far_frac)
+                used = of_fit.near if near else np.ones(fit.size, dtype=np.bool_)
+                beta = 0.0
+                if with_log:
+                    used = used & np.isfinite(gap_of_references[fit])
+                    beta = _slope(gap_of_references[fit][used], residual[used])
+                    residual = residual - beta * gap_of_references[fit]
+                left = residual[used]
+                predicted, own = science.predict_level(
+                    left, np.ones(left.size), 0.0, BED_SCATTER_FRAC, LEVEL_PLUGS, LEVEL_FREEDOM
+                )
+                values = np.full(self.n, np.nan)
+                values[at] = phi[self.judged[at]] - (expected.local_frac if near else expected.far_frac)
+                values = values - (beta * gap if with_log else 0.0)
+                put = at[here]
+                self._put(found, put, fit[used], values, predicted, own, label)
+                found.more["shared"][put], found.more["near"][put] = beta, float(near)
+                found.count[put] = expected.count[here] if near else found.count[put]
+                found.weight[put] = 1.0 if near else FAR
+        missing = np.isnan(phi[self.judged])
+        found.difference[missing] = np.nan
+        found.reason[missing] = "porosity not known"
+        return found
+
+    def packing(self) -> Found:
+        """Porosity against what grains of its sorting can be packed to: soft rock only."""
+        e = self.evidence
+        found = Found.none(self.n)
+        sorting = e.sorting_phi[self.judged].copy()
+        for name in dict.fromkeys(e.facies[self.judged].tolist()):
+            of_facies = e.sorting_phi[self.reference & (e.facies == name) & np.isfinite(e.sorting_phi)]
+            if name and of_facies.size:
+                sorting[e.facies[self.judged] == name] = np.median(of_facies)
+        sorting[~(sorting > 0.0)] = np.nan
+        limit = texture.packing_porosity_frac(sorting)
+        found.more["limit"] = np.asarray(limit)
+        phi = e.porosity_frac[self.judged]
+        found.difference = phi - limit
+        found.reason[np.isnan(sorting)] = "sorting not described"
+        found.reason[np.isnan(phi)] = "porosity not known"
+        hard = ~self.rock_class[self.judged]
+        found.difference[hard] = np.nan
+        found.more["limit"][hard] = np.nan
+        found.reason[hard] = "hard rock: cement fills the packing"
+        return found
+
+    def fines(self) -> Found:
+        """Share of fines against undamaged plugs of the facies, where sieved."""
+        e = self.evidence
+        found = Found.none(self.n)
+        usable = np.isfinite(e.fines_frac)
+        found.reason[:] = "no sieved reference of its facies"
+        for at, fit, label in self.groups(usable, 2):
+            predicted, own = science.predict_level(
+                e.fines_frac[fit],
+                np.ones(fit.size),
+                float(np.median(e.fines_frac[fit])),
+                FINES_SCATTER_FRAC,
+                LEVEL_PLUGS,
+                LEVEL_FREEDOM,
+            )
+            self._put(found, at, fit, e.fines_frac[self.judged], predicted, own, label)
+        missing = ~usable[self.judged]
+        found.difference[missing] = np.nan
+        found.reason[missing] = "not sieved"
+        return found
+
+    def condition(self) -> Found:
+        found = Found.none(self.n)
+        mark = science.telling_mark(self.evidence.condition[self.judged].astype(np.str_))
+        found.label = mark.astype(object)
+        found.difference = np.where(mark == "", np.nan, 0.0)
+        found.reason[mark == ""] = "condition not described"
+        return found
+
+    def grain_density(self) -> Found:
+        """Grain density against undamaged plugs: not evidence of crushing, but it can take trust from it."""
+        density = self.evidence.grain_density_g_cm3
+        found = Found.none(self.n)
+        usable = np.isfinite(density)
+        for at, fit, label in self.groups(usable, 3):
+            predicted, own = science.predict_level(
+                density[fit],
+                np.ones(fit.size),
+                float(np.median(density[fit])),
+                0.01,
+                LEVEL_PLUGS,
+                LEVEL_FREEDOM,
+            )
+            self._put(found, at, fit, density[self.judged], predicted, own, label)
+        found.difference[~usable[self.judged]] = np.nan
+        return found
+
+
+def _words(text: object) -> set[str]:
+    return {word.strip() for word in str(text).casefold().split(",")}
+
+
+def _by_firmness(firmness: Texts) -> Array:
+    return np.array([SOFT_BY_FIRMNESS.get(str(word), np.nan) for word in firmness], dtype=np.float64)
+
+
+def _by_porosity(porosity_frac: Array) -> Array:
+    return np.clip((porosity_frac - SOFT_MIDDLE_FRAC) / SOFT_STEP_FRAC, -SOFT_MOST, SOFT_MOST)
+
+
+def _slope(x: Array, y: Array) -> float:
+    """Share of x that comes again in y."""
+    if x.size < FEWEST or np.ptp(x) == 0.0:
+        return SHARED
+    centred = x - x.mean()
+    return float(np.clip(centred @ (y - y.mean()) / (centred @ centred), 0.0, 0.9))
+
+
+def _matrix(grain_density_g_cm3: Array, fit: NDArray[np.intp]) -> float:
+    known = grain_density_g_cm3[fit]
+    known = known[np.isfinite(known)]
+    return float(np.median(known)) if known.size >= 3 else MATRIX_G_CM3
+
+
+def _without_strays(phi: Array, log_k: Array, fit: NDArray[np.intp]) -> NDArray[np.intp]:
+    """Undamaged plugs without those that stand out of the trend beyond chance."""
+    if fit.size <= FEWEST or np.ptp(phi[fit]) == 0.0:
+        return fit
+    own = science.predict_line(phi[fit], log_k[fit], np.zeros(0)).own
+    kept = fit[~science.left_out_mask(own, log_k[fit])]
+    return kept if kept.size >= FEWEST else fit
+
+
+@dataclass(frozen=True, slots=True)
+class _Expected:
+    """Porosity expected of plugs from those within `NEIGHBOURS_M`, and from all of the group."""
+
+    local_frac: Array
+    far_frac: Array
+    near: Mask
+    count: NDArray[np.intp]
+
+
+def _from_neighbours(
+    depth_m: Array, phi: Array, fit: NDArray[np.intp], targets: NDArray[np.intp]
+) -> _Expected:
+    """What references other than the plug itself let one expect, the nearer the more."""
+    away = np.abs(depth_m[targets, np.newaxis] - depth_m[fit])
+    itself = targets[:, np.newaxis] == fit
+    close = (away <= NEIGHBOURS_M) & ~itself
+    weight = np.where(close, np.exp(-np.where(close, away, 0.0) / FALL_M), 0.0)
+    others = np.maximum((~itself).sum(axis=1), 1)
+    far = (phi[fit].sum() - np.where(itself, phi[fit], 0.0).sum(axis=1)) / others
+    local = (weight @ phi[fit] + LEVEL_PLUGS * far) / (weight.sum(axis=1) + LEVEL_PLUGS)
+    return _Expected(local, far, close.any(axis=1), close.sum(axis=1))
+
+
+def _log_porosity(
+    log: DensityLog | None, depth_m: Array, matrix_g_cm3: float, all_hole: bool = False
+) -> tuple[Array, Array]:
+    """Porosity from the density log about each depth, and how much it changes there [v/v].
+
+    The mean within 0.3 m; half the difference of the means within 0.45 m above and below.
+    """
+    nothing = np.full(depth_m.shape, np.nan)
+    if log is None or not log.depth_m.size:
+        return nothing, np.zeros(depth_m.shape)
+    good = np.isfinite(log.density_g_cm3) & (log.density_g_cm3 > 0.0)
+    if not all_hole:
+        good &= ~log.bad
+    at = log.depth_m[good]
+    order = np.argsort(at, kind="stable")
+    at, density = at[order], log.density_g_cm3[good][order]
+    porosity = np.asarray(science.density_porosity_frac(density, matrix_g_cm3, FLUID_G_CM3))
+    sums = np.concatenate([[0.0], np.cumsum(porosity)])
+
+    def mean(top: Array, base: Array) -> Array:
+        first, last = np.searchsorted(at, top, side="left"), np.searchsorted(at, base, side="right")
+        count = last - first
+        return np.where(count > 0, (sums[last] - sums[first]) / np.maximum(count, 1), np.nan)
+
+    z = np.nan_to_num(depth_m, nan=-1e9)
+    wide = 1.5 * HALF_HEIGHT_M
+    rough = 0.5 * np.abs(mean(z - wide, z) - mean(z, z + wide))
+    return mean(z - HALF_HEIGHT_M, z + HALF_HEIGHT_M), np.nan_to_num(rough)

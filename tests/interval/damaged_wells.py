@@ -1,0 +1,161 @@
+"""Wells simulated from a declared law of damage, for holding the likelihood against truth. Simulated, not real.
+
+The law. Beds 2 to 5 m thick of a soft and a hard sand in turn: porosity of a bed wanders about 0.29 and 0.15 (sd
+0.012 from bed to bed, 0.012 within), log10 k = a + b porosity + scatter (soft 13 decades per unit of porosity
+and 0.15 decades, hard 17 and 0.20). A share of the percussion plugs is damaged: soft ones compacted (two of
+three: porosity less 0.025 to 0.07, permeability along the trend and times 0.4 to 0.9) or loosened (porosity
+more by 0.025 to 0.06, permeability times 1 to 1.5), hard ones shattered (porosity more by 0.021 to 0.05,
+permeability times 3 to 30). Sound percussion plugs change by nothing.
+
+What is seen: porosity to 0.005, log10 k to 0.03, a density log with 0.02 g/cm3 of noise a sample (every 0.1524
+m) over 0.4 m of rock in situ (0.015 less porosity in the soft sand), conditions of which one in seven is wrong,
+firmness of which one in ten is wrong. Core lies at driller's depth, off by a bulk shift; `matched` leaves 0.1 m
+of that.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from corelab.interval.impact import DensityLog, Evidence
+from corelab.science.impact import kozeny_carman_change_decades
+
+LOOKS = {"compacted": "powdered", "loosened": "crumbled", "shattered": "cracked"}
+MARKS = ("powdered", "crumbled", "cracked", "chipped")
+
+
+@dataclass(frozen=True)
+class Simulated:
+    """What the laboratory would hold, and the truth of each percussion plug in its order."""
+
+    evidence: Evidence
+    damaged: NDArray[np.bool_]
+    kind: NDArray[np.str_]
+
+
+@dataclass(frozen=True)
+class Law:
+    """How a well is made; the defaults are the declared law, other values ask how far it holds."""
+
+    percussion: int = 60
+    core: int = 120
+    rotary: int = 12
+    rate: float = 0.35
+    porosity: tuple[float, float] = (0.29, 0.15)  # soft, hard
+    between_beds: float = 0.012
+    within_beds: float = 0.012
+    scatter: tuple[float, float] = (0.15, 0.20)  # decades
+    #: Permeability of compacted plugs: along the trend, or as porosity alone takes after Kozeny and Carman.
+    along_trend: bool = True
+    crushed: tuple[float, float] = (0.4, 0.9)
+    loosened: tuple[float, float] = (1.0, 1.5)
+    shattered: tuple[float, float] = (3.0, 30.0)
+    log_noise_g_cm3: float = 0.02
+    seen: float = 0.7
+    wrong_words: float = 0.15
+    any_word: bool = False
+    named: bool = True
+    touched_frac: float = 0.0
+    core_depth_error_m: float = 0.1
+    core_share: float = 0.6  # of the height in which plugs were shot
+
+
+def simulate(seed: int, law: Law | None = None) -> Simulated:
+    law = law or Law()
+    rng = np.random.default_rng(seed)
+    top, length = 2500.0, 80.0
+    step = 0.05
+    z = np.arange(top - 10, top + length + 10, step)
+    soft, phi = np.empty(z.size, bool), np.empty(z.size)
+    at, turn = 0, bool(rng.integers(2))
+    while at < z.size:
+        end = min(at + int(rng.uniform(2, 5) / step), z.size)
+        soft[at:end] = turn
+        bed = law.porosity[0 if turn else 1] + rng.normal(0, law.between_beds)
+        phi[at:end] = bed + rng.normal(0, law.within_beds, end - at)
+        at, turn = end, not turn
+    in_situ = phi - np.where(soft, 0.015, 0.003)
+    rho = 2.65 * (1 - in_situ) + 1.02 * in_situ
+    log_z = np.arange(z[0] + 1, z[-1] - 1, 0.1524)
+    log_rho = np.interp(log_z, z, np.convolve(rho, np.ones(8) / 8, "same"))
+    log_rho += rng.normal(0, law.log_noise_g_cm3, log_z.size)
+
+    n = law.percussion + law.core + law.rotary
+    sources = ["percussion sidewall", "core", "rotary sidewall"]
+    source = np.repeat(np.array(sources, object), [law.percussion, law.core, law.rotary])
+    shot = source != "core"
+    depth = rng.uniform(top, top + length, n)
+    core_top = top + 0.5 * (1 - law.core_share) * length
+    spaced = np.linspace(core_top, core_top + law.core_share * length, law.core)
+    depth[~shot] = spaced + rng.uniform(-0.05, 0.05, law.core)
+    place = np.clip(np.searchsorted(z, depth), 0, z.size - 1)
+    is_soft, true = soft[place], phi[place].copy()
+    a, b = np.where(is_soft, -0.9, -2.6), np.where(is_soft, 13.0, 17.0)
+    log_k = a + b * true + rng.normal(0, np.where(is_soft, *law.scatter))
+    percussion = source == "percussion sidewall"
+    hit = percussion & (rng.random(n) < law.rate)
+    if_soft = np.where(rng.random(n) < 2 / 3, "compacted", "loosened")
+    kind = np.where(~hit, "none", np.where(is_soft, if_soft, "shattered"))
+    sizes = {"compacted": (-0.07, -0.025), "loosened": (0.025, 0.06), "shattered": (0.021, 0.05)}
+    for name, size in sizes.items():
+        here = kind == name
+        change = rng.uniform(*size, n)[here]
+        factors = {"compacted": law.crushed, "loosened": law.loosened, "shattered": law.shattered}[name]
+        log_k[here] += rng.uniform(*np.log10(factors), n)[here]
+        if name == "compacted":
+            alone = kozeny_carman_change_decades(true[here], true[here] + change)
+            log_k[here] += b[here] * change if law.along_trend else alone
+        true[here] += change
+    touched = percussion & ~hit
+    true[touched] += rng.normal(0, 1, n)[touched] * law.touched_frac
+
+    words = np.array([LOOKS.get(k, "intact") for k in kind], object)
+    words[hit & (rng.random(n) > law.seen)] = "intact"
+    if law.any_word:
+        marked = words != "intact"
+        words[marked] = rng.choice(MARKS, n)[marked]
+    wrong = (rng.random(n) < law.wrong_words) & (shot | (rng.random(n) < 0.3))
+    words[wrong] = rng.choice(MARKS, n)[wrong]
+    firmness = np.where(is_soft, "friable", "hard").astype(object)
+    odd = rng.random(n) < 0.1
+    firmness[odd] = rng.choice(["loose", "friable", "firm", "hard"], n)[odd]
+    names = np.where(is_soft, "bar sand", "quartzitic sand") if law.named else np.full(n, "")
+    evidence = Evidence(
+        source=source,
+        depth_m=np.where(shot, depth, depth + rng.normal(0, law.core_depth_error_m)),
+        facies=names.astype(object),
+        horizontal=np.ones(n, bool),
+        duplicate=np.zeros(n, bool),
+        porosity_frac=true + rng.normal(0, 0.005, n),
+        grain_density_g_cm3=2.65 + rng.normal(0, 0.006, n),
+        log_permeability=log_k + rng.normal(0, 0.03, n),
+        reason_permeability=np.full(n, "", object),
+        firmness=firmness,
+        condition=words,
+        sorting_phi=np.where(is_soft, 0.5, 0.8),
+        fines_frac=np.full(n, np.nan),
+        log=DensityLog(log_z, log_rho, np.zeros(log_z.size, bool)),
+    )
+    return Simulated(evidence, hit[percussion], kind[percussion].astype(str))
+
+
+def without(evidence: Evidence, *what: str) -> Evidence:
+    """The same well without its log, its descriptions, or its core and rotary plugs."""
+    n = len(evidence)
+    if "log" in what:
+        evidence = replace(evidence, log=None)
+    if "descriptions" in what:
+        empty = np.full(n, "", object)
+        evidence = replace(evidence, condition=empty, firmness=empty, sorting_phi=np.full(n, np.nan))
+    if "core" in what:
+        kept = evidence.source == "percussion sidewall"
+        columns = {
+            name: getattr(evidence, name)[kept]
+            for name in Evidence.__slots__
+            if name != "log"
+        }
+        evidence = Evidence(**columns, log=evidence.log)
+    return evidence
