@@ -6,14 +6,20 @@ references: what they say of a plug never rests on the plug itself.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass, field
+import re
+from collections.abc import Callable, Mapping
+from dataclasses import asdict, dataclass, field
 from typing import Any
 
 import numpy as np
 import pandas as pd
+import sqlalchemy as sa
 from numpy.typing import NDArray
 
+from corelab import units
+from corelab.bench import settings as lab_settings
+from corelab.errors import Problem, Refused
+from corelab.records import store
 from corelab.science import impact as science
 from corelab.science import texture
 
@@ -40,10 +46,12 @@ HALF_HEIGHT_M = 0.3
 #: Scatter of plug porosity about the log before any plug is compared: 2 porosity units (judgement in the
 #: trade: 2 to 3), worth four degrees of freedom (assumed).
 LOG_SCATTER_FRAC, LEVEL_FREEDOM, LEVEL_PLUGS = 0.02, 4.0, 0.25
-#: Ambient over in-situ porosity, before any plug is compared: 1 to 3 porosity units in soft sand, less in hard.
+#: Ambient over in-situ porosity, before any plug is compared: 1 to 3 units in soft sand, less in hard.
 AMBIENT_FRAC = (0.005, 0.020)
-#: Scatter of porosity in a bed, and of the share of fines in a facies, before any plug is compared (assumed).
-BED_SCATTER_FRAC, FINES_SCATTER_FRAC = 0.02, 0.03
+#: Scatter of porosity and of the share of fines in a facies, before any plug is compared (assumed).
+FACIES_SCATTER_FRAC, FINES_SCATTER_FRAC = 0.02, 0.03
+#: Share of damage that rearranges grains and adds no fines (assumed; bands of grain flow hardly have any).
+NO_FINES_SHARE = 0.5
 #: Share of the difference from the log that neighbours repeat, with too few plugs to tell (assumed).
 SHARED = 0.5
 #: Log-odds of soft rock by firmness; by porosity, its middle and its step (assumed).
@@ -195,7 +203,7 @@ def assess(
         verdict,
         direction,
         rock.soft_share,
-        assessed.any(axis=1),
+        np.asarray(assessed.any(axis=1)),
         assessed.mean(axis=1),
         weighed,
         adjust,
@@ -260,7 +268,11 @@ def _terms(found: Mapping[str, Found], porosity: Array, changes: science.Damage)
     add(
         "fines",
         science.fines_fit(f.difference, f.scale, f.freedom, zero),
-        science.fines_fit(wide(f.difference), wide(f.scale), wide(f.freedom), added),
+        np.logaddexp(
+            np.log(NO_FINES_SHARE) + science.fines_fit(f.difference, f.scale, f.freedom, zero)[:, np.newaxis],
+            np.log1p(-NO_FINES_SHARE)
+            + science.fines_fit(wide(f.difference), wide(f.scale), wide(f.freedom), added),
+        ),
     )
     mark = found["condition"].label.astype(np.str_)
     by_kind = np.stack([science.condition_fit(mark, kind) for kind in science.KINDS], axis=1)
@@ -330,7 +342,7 @@ class _Rock:
         own: science.Prediction,
         label: str,
     ) -> None:
-        """Differences from what others predict: `predicted` (one a plug or one for all), or `own` in the fit."""
+        """Differences from what others predict: `predicted` (one a plug, or one), or `own` within the fit."""
         place = {int(plug): i for i, plug in enumerate(fit)}
         inside = np.array([place.get(int(p), -1) for p in self.judged[at]], dtype=np.intp)
         part = inside >= 0
@@ -363,7 +375,9 @@ class _Rock:
             found.more["slope"][at] = line.slope
         there = usable[self.judged]
         found.difference[~there] = np.nan
-        reason = np.where(np.isnan(phi[self.judged]), "porosity not known", e.reason_permeability[self.judged])
+        reason = np.where(
+            np.isnan(phi[self.judged]), "porosity not known", e.reason_permeability[self.judged]
+        )
         found.reason[~there] = reason[~there]
         return found
 
@@ -397,7 +411,9 @@ class _Rock:
         found.difference[~there] = np.nan
         found.reason[~there] = "no density log at its depth"
         if e.log is not None:
-            washed = np.isnan(self.log_frac) & ~np.isnan(_log_porosity(e.log, e.depth_m, MATRIX_G_CM3, True)[0])
+            washed = np.isnan(self.log_frac) & ~np.isnan(
+                _log_porosity(e.log, e.depth_m, MATRIX_G_CM3, True)[0]
+            )
             found.reason[washed[self.judged]] = "density log not used: hole washed out"
         found.reason[np.isnan(e.porosity_frac[self.judged])] = "porosity not known"
         return found, whole
@@ -405,7 +421,7 @@ class _Rock:
     def neighbours(self, gap: Array, gap_of_references: Array) -> Found:
         """Plug porosity against core and rotary plugs of its bed, else of its facies.
 
-        What the log told of already (`gap`, and the same of each reference) is taken off: the share of it that
+        What the log told already (`gap`, and the same of each reference) is taken off: the share of it that
         comes again is the slope of one difference on the other among the references.
         """
         e = self.evidence
@@ -417,6 +433,8 @@ class _Rock:
             of_fit = _from_neighbours(e.depth_m, phi, fit, fit)
             expected = _from_neighbours(e.depth_m, phi, fit, self.judged[at])
             few = np.count_nonzero(of_fit.near) < 2
+            far = phi[fit] - of_fit.far_frac
+            scatter = float(np.std(far)) if fit.size >= FEWEST else FACIES_SCATTER_FRAC
             for near, with_log in ((True, True), (True, False), (False, True), (False, False)):
                 here = ((expected.near & (not few)) == near) & (np.isfinite(gap[at]) == with_log)
                 if not here.any():
@@ -430,7 +448,7 @@ class _Rock:
                     residual = residual - beta * gap_of_references[fit]
                 left = residual[used]
                 predicted, own = science.predict_level(
-                    left, np.ones(left.size), 0.0, BED_SCATTER_FRAC, LEVEL_PLUGS, LEVEL_FREEDOM
+                    left, np.ones(left.size), 0.0, scatter, LEVEL_PLUGS, LEVEL_FREEDOM
                 )
                 values = np.full(self.n, np.nan)
                 values[at] = phi[self.judged[at]] - (expected.local_frac if near else expected.far_frac)
@@ -462,9 +480,11 @@ class _Rock:
         found.reason[np.isnan(sorting)] = "sorting not described"
         found.reason[np.isnan(phi)] = "porosity not known"
         hard = ~self.rock_class[self.judged]
-        found.difference[hard] = np.nan
-        found.more["limit"][hard] = np.nan
-        found.reason[hard] = "hard rock: cement fills the packing"
+        within = ~(phi > limit)
+        found.reason[within & np.isfinite(found.difference)] = "porosity is within what its sorting allows"
+        found.reason[hard] = "in hard rock cement fills what packing leaves"
+        found.difference[hard | within] = np.nan
+        found.more["limit"][hard | within] = np.nan
         return found
 
     def fines(self) -> Found:
@@ -602,3 +622,393 @@ def _log_porosity(
     wide = 1.5 * HALF_HEIGHT_M
     rough = 0.5 * np.abs(mean(z - wide, z) - mean(z, z + wide))
     return mean(z - HALF_HEIGHT_M, z + HALF_HEIGHT_M), np.nan_to_num(rough)
+
+
+# ---- from the record
+
+
+def gather(connection: sa.Connection, frame: pd.DataFrame, log: DensityLog | None = None) -> Evidence:
+    """The evidence of a well from its plugs: `plug_id` and the columns of an interval, in metres."""
+    ids = frame["plug_id"].to_numpy(dtype=np.int64)
+    numbers = set(ids.tolist())
+    place = pd.Series(np.arange(len(ids)), index=ids)
+    described = {
+        int(row["plug_id"]): row for row in store.rows_of(store.in_force(connection, "descriptions", numbers))
+    }
+    facts = {int(row["plug_id"]): row for row in store.rows_of(store.in_force(connection, "plugs", numbers))}
+    rows = [described.get(int(number), {}) for number in ids]
+
+    def words(column: str) -> Texts:
+        return np.array([row.get(column) or "" for row in rows], dtype=object)
+
+    sorting = np.array([row.get("sorting_phi", np.nan) for row in rows], dtype=np.float64)
+    by_word = texture.described_sorting_phi(
+        words("sorting_class").astype(np.str_), words("sorting_scale").astype(np.str_)
+    )
+    k, basis = frame["klinkenberg permeability [mD]"].to_numpy(np.float64), frame["permeability basis"]
+    flags = frame["flags"].astype(str)
+    reason = np.full(len(ids), "not measured", dtype=object)
+    reason[(basis == "texture").to_numpy()] = "permeability from texture tells nothing of crushing"
+    limit = flags.str.contains("klinkenberg permeability (?:below|above) limit").to_numpy(dtype=np.bool_)
+    reason[limit] = "permeability beyond a limit"
+    measured = basis.isin(["measured", "reported"]).to_numpy() & ~limit & (k > 0.0)
+    duplicate = [not pd.isna(facts.get(int(number), {}).get("duplicate_of_id", np.nan)) for number in ids]
+    return Evidence(
+        source=frame["source"].to_numpy(dtype=object),
+        depth_m=frame["log depth [m]"].to_numpy(dtype=np.float64),
+        facies=np.array([str(f).strip().casefold() for f in frame["facies"]], dtype=object),
+        horizontal=frame["orientation"].isin(["horizontal", ""]).to_numpy(),
+        duplicate=np.array(duplicate, dtype=np.bool_),
+        porosity_frac=frame["porosity [v/v]"].to_numpy(dtype=np.float64),
+        grain_density_g_cm3=frame["grain density [g/cm3]"].to_numpy(dtype=np.float64),
+        log_permeability=np.log10(np.where(measured, k, np.nan)),
+        reason_permeability=reason,
+        firmness=words("firmness"),
+        condition=words("condition"),
+        sorting_phi=np.where(np.isnan(sorting), by_word, sorting),
+        fines_frac=_fines(connection, place),
+        log=log,
+    )
+
+
+def _fines(connection: sa.Connection, place: pd.Series[int]) -> Array:
+    """Share by mass that passes the sieve at the sand limit, for each plug; NaN where none comes near it."""
+    fines = np.full(len(place), np.nan)
+    sieves = store.in_force(connection, "sieve", set(place.index.tolist()))
+    for number, rows in sieves.groupby("plug_id"):
+        aperture, mass = rows["aperture_mm"].to_numpy(), rows["mass_retained_g"].to_numpy()
+        at_limit = aperture[(aperture >= FINES_WITHIN_MM[0]) & (aperture <= FINES_WITHIN_MM[1])]
+        if at_limit.size and mass.sum() > 0.0:
+            cut = at_limit[np.argmin(np.abs(at_limit - FINES_MM))]
+            fines[place[number]] = mass[aperture < cut].sum() / mass.sum()
+    return fines
+
+
+def density_log(connection: sa.Connection, well: int) -> DensityLog | None:
+    """The density log of a well, with the places where the hole is too wide for it."""
+    return None
+
+
+def of_well(
+    connection: sa.Connection,
+    well: int,
+    frame: pd.DataFrame,
+    stored: Mapping[str, str],
+    prior_frac: float | None = None,
+    *,
+    blind: bool = False,
+) -> Assessment:
+    """The assessment of a well, from its plugs as `select.of_well` gives them."""
+    prior = lab_settings.number(stored, "crush prior") if prior_frac is None else prior_frac
+    evidence = gather(connection, frame, density_log(connection, well))
+    return assess(evidence, prior, blind=blind, recalibration=recalibration(stored))
+
+
+def recalibration(stored: Mapping[str, str]) -> science.Recalibration | None:
+    """What the laboratory adopted; None where nothing."""
+    text = lab_settings.value(stored, "crush recalibration")
+    found = re.fullmatch(lab_settings.RECALIBRATION, text)
+    return science.Recalibration(float(found[1]), float(found[2])) if found else None
+
+
+def add_columns(frame: pd.DataFrame, assessment: Assessment) -> None:
+    """Likelihood, verdict and flags of percussion plugs, in the columns of an interval."""
+    at, verdict = assessment.place, assessment.verdict
+    likelihood = np.full(len(frame), np.nan)
+    likelihood[at] = np.where(assessment.assessed, assessment.likelihood_frac, np.nan)
+    frame["crush likelihood [v/v]"] = likelihood
+    words = frame["crush verdict"].to_numpy(dtype=object, copy=True)
+    words[at] = verdict
+    frame["crush verdict"] = words
+    flags = frame["flags"].to_numpy(dtype=object, copy=True)
+    told = {
+        "likely": "crush likely",
+        "possible": "crush possible",
+        "not assessed": "crush likelihood: no evidence bears on it",
+    }
+    for place, word in zip(at, verdict, strict=True):
+        if word in told:
+            flags[place] = "; ".join(part for part in (flags[place], told[word]) if part)
+    frame["flags"] = flags
+
+
+# ---- what persons judged
+
+
+@dataclass(frozen=True, slots=True)
+class Labelled:
+    """Percussion plugs that persons judged: evidence on the log-odds, the verdict, and the well."""
+
+    evidence_log_odds: Array
+    damaged: Array
+    well: Texts
+
+
+def labelled(
+    connection: sa.Connection, frames: Mapping[int, pd.DataFrame], stored: Mapping[str, str]
+) -> Labelled:
+    """Plugs of these wells judged crushed or not; where judges part evenly, or are unsure, left out."""
+    odds: list[float] = []
+    damaged: list[float] = []
+    wells: list[int] = []
+    prior = lab_settings.number(stored, "crush prior")
+    for well, frame in frames.items():
+        ids = frame["plug_id"].to_numpy(dtype=np.int64)
+        judged = store.in_force(connection, "crush verdicts", set(ids.tolist()))
+        votes = judged["crushed"].map({"yes": 1, "no": -1, "unsure": 0}).groupby(judged["plug_id"]).sum()
+        if not len(votes):
+            continue
+        found = assess(gather(connection, frame, density_log(connection, well)), prior)
+        for place, total, assessed in zip(found.place, found.weighed.total, found.assessed, strict=True):
+            vote = votes.get(ids[place], 0)
+            if vote and assessed:
+                odds.append(float(total))
+                damaged.append(float(vote > 0))
+                wells.append(well)
+    return Labelled(np.array(odds), np.array(damaged), np.array(wells, dtype=object))
+
+
+FOLDS = 10
+
+
+def folds(judged: Labelled) -> NDArray[np.intp]:
+    """A well at a time where there are three or more; else tenths with like shares of both verdicts."""
+    wells, of_well = np.unique(judged.well.astype(np.int64), return_inverse=True)
+    if wells.size >= 3:
+        return of_well
+    fold = np.empty(judged.damaged.size, dtype=np.intp)
+    fold[np.argsort(judged.damaged, kind="stable")] = np.arange(fold.size) % FOLDS
+    return fold
+
+
+def recalibrated(judged: Labelled, stored: Mapping[str, str]) -> dict[str, Any]:
+    """Two parameters from persons' verdicts, and the skill without and with them, cross-validated.
+
+    Raises
+    ------
+    Refused
+        If there are fewer than 30 verdicts, or fewer than 5 of a kind.
+    """
+    prior = lab_settings.number(stored, "crush prior")
+    y = judged.damaged
+    fewest = min(int(y.sum()), int(y.size - y.sum()))
+    if y.size < science.RECALIBRATION_LABELS or fewest < FEWEST_OF_A_KIND:
+        raise Refused(
+            [
+                Problem(
+                    f"{y.size} percussion plugs judged crushed or not, {int(y.sum())} of them crushed",
+                    f"{science.RECALIBRATION_LABELS} or more, {FEWEST_OF_A_KIND} or more of each",
+                    "load more 'crush verdicts'",
+                )
+            ],
+            "Verdicts of persons are too few to learn from.",
+        )
+    fitted = science.recalibrate(judged.evidence_log_odds, y, prior)
+    fold = folds(judged)
+    before = np.asarray(science.likelihood_frac(prior, judged.evidence_log_odds))
+    after = science.cross_validated_frac(judged.evidence_log_odds, y, prior, fold)
+    return {
+        "verdicts": int(y.size),
+        "crushed": int(y.sum()),
+        "prior": prior,
+        "intercept": fitted.intercept,
+        "slope": fitted.slope,
+        "left out in turn": "wells" if np.unique(judged.well).size >= 3 else "tenths of the plugs",
+        "as it is": asdict(science.skill(before, y)),
+        "recalibrated": asdict(science.skill(after, y)),
+        "setting": f"intercept {fitted.intercept:.4f}, slope {fitted.slope:.4f}",
+    }
+
+
+FEWEST_OF_A_KIND = 5
+
+
+# ---- in words
+
+
+def table(assessment: Assessment, frame: pd.DataFrame, unit: str) -> list[dict[str, Any]]:
+    """What `corelab impact` shows: one object a plug, with its evidence and how the answer moves.
+
+    Depths are in metres, and in `unit` beside where that is another.
+    """
+    made = []
+    depth_m = frame["depth [m]"].to_numpy(dtype=np.float64)
+    shown = np.asarray(units.convert(depth_m, units.unit("m", "length"), units.unit(unit, "length"))).round(9)
+    for i, place in enumerate(assessment.place):
+        total = float(assessment.weighed.total[i] + assessment.adjustment[i])
+        made.append(
+            {
+                "well": frame["well"].iloc[place],
+                "plug": frame["plug"].iloc[place],
+                "depth [m]": float(depth_m[place]),
+                **({} if unit == "m" else {f"depth [{unit}]": float(shown[place])}),
+                "crush likelihood [v/v]": float(assessment.likelihood_frac[i]),
+                "crush verdict": str(assessment.verdict[i]),
+                "direction": str(assessment.direction[i]),
+                "coverage": round(float(assessment.coverage[i]), 4),
+                "prior": assessment.prior_frac,
+                "soft rock [v/v]": round(float(assessment.soft_share[i]), 4),
+                "by prior": {f"{p:.1f}": round(float(science.likelihood_frac(p, total)), 4) for p in PRIORS},
+                "evidence": evidence_rows(assessment, i),
+                "missing": missing_words(assessment, i),
+            }
+        )
+    return made
+
+
+PRIORS = (0.1, 0.2, 0.3, 0.4, 0.5)
+
+
+def evidence_rows(assessment: Assessment, i: int) -> list[dict[str, Any]]:
+    """The terms that bear on one plug; the effects sum to what is added to the log-odds of the prior."""
+    rows = []
+    for t, term in enumerate(TERMS):
+        found = assessment.found[term]
+        if not np.isfinite(found.difference[i]):
+            continue
+        rows.append(
+            {
+                "term": term,
+                "finding": _FINDINGS[term](assessment, found, i),
+                "weight": float(found.weight[i]),
+                "ratio": float(assessment.weighed.ratio[i, t]),
+                "effect": float(assessment.weighed.effect[i, t]),
+            }
+        )
+    grains = assessment.found["grain density"]
+    if grains.more["off"][i] > 0.0:
+        rows.append(
+            {
+                "term": "grain density",
+                "finding": f"grain density differs by {_signed(grains.difference[i], 3)} g/cm3 from "
+                f"{_plugs(grains, i)}: this points to mud solids or poor cleaning, not to crushing; "
+                "porosity and permeability count half",
+                "weight": 0.0,
+                "ratio": 0.0,
+                "effect": 0.0,
+            }
+        )
+    if assessment.adjustment[i] != 0.0:
+        rows.append(
+            {
+                "term": "recalibration",
+                "finding": "correction learnt from the verdicts of persons in this laboratory",
+                "weight": 1.0,
+                "ratio": float(assessment.adjustment[i]),
+                "effect": float(assessment.adjustment[i]),
+            }
+        )
+    return rows
+
+
+def missing_words(assessment: Assessment, i: int) -> list[str]:
+    return [
+        f"{term}: {assessment.found[term].reason[i]}"
+        for term in TERMS
+        if not np.isfinite(assessment.found[term].difference[i])
+    ]
+
+
+def _signed(value: float, decimals: int) -> str:
+    return f"{value:+.{decimals}f}".replace("-", "−")
+
+
+def _plugs(found: Found, i: int) -> str:
+    count = int(found.count[i])
+    return f"{count} undamaged plug{'' if count == 1 else 's'} of {found.label[i]}"
+
+
+def _rock_words(assessment: Assessment, i: int) -> str:
+    share = assessment.soft_share[i]
+    return "soft rock" if share > 0.7 else "hard rock" if share < 0.3 else "rock neither soft nor hard"
+
+
+def _scatters(found: Found, i: int) -> str:
+    return f"{abs(found.difference[i]) / found.scale[i]:.1f} times the scatter"
+
+
+def _permeability_words(assessment: Assessment, found: Found, i: int) -> str:
+    k = 10.0 ** assessment.evidence.log_permeability[assessment.place[i]]
+    side = "below" if found.difference[i] < 0.0 else "above"
+    rock = _rock_words(assessment, i)
+    sign = {"soft rock": "low", "hard rock": "high"}.get(rock, "either")
+    return (
+        f"measured {k:.4g} mD lies a factor of {10.0 ** abs(found.difference[i]):.2g} {side} the trend of "
+        f"{_plugs(found, i)} at its porosity ({_scatters(found, i)}); in {rock} {sign} is suspicious"
+    )
+
+
+def _density_words(assessment: Assessment, found: Found, i: int) -> str:
+    side = "below" if found.difference[i] < 0.0 else "above"
+    against = (
+        f"where {_plugs(found, i)} stand" if found.count[i] else "where undamaged rock is assumed to stand"
+    )
+    return (
+        f"porosity is {100.0 * abs(found.difference[i]):.1f} porosity units {side} {against} "
+        f"against the density log ({_scatters(found, i)})"
+    )
+
+
+def _neighbour_words(assessment: Assessment, found: Found, i: int) -> str:
+    side = "below" if found.difference[i] < 0.0 else "above"
+    where = f"within {NEIGHBOURS_M:g} m" if found.more["near"][i] > 0.0 else "elsewhere in the well"
+    less = ", what the log told taken off" if found.more["shared"][i] > 0.0 else ""
+    return (
+        f"porosity is {100.0 * abs(found.difference[i]):.1f} porosity units {side} that of "
+        f"{_plugs(found, i)} {where}{less} ({_scatters(found, i)})"
+    )
+
+
+def _packing_words(assessment: Assessment, found: Found, i: int) -> str:
+    phi = assessment.evidence.porosity_frac[assessment.place[i]]
+    limit = found.more["limit"][i]
+    if phi > science.CUBIC_PACKING_FRAC:
+        return f"porosity {phi:.3f} is looser than the loosest regular packing of spheres, 0.476"
+    if found.difference[i] > science.PACKING_MARGIN_FRAC:
+        return (
+            f"porosity {phi:.3f} passes the {limit:.3f} of packed sand of its sorting by more than 0.05: "
+            "loosened, or the bulk volume is wrong"
+        )
+    return f"porosity {phi:.3f} is possible for its sorting (packed sand {limit:.3f}, and 0.05 more)"
+
+
+def _fines_words(assessment: Assessment, found: Found, i: int) -> str:
+    side = "less" if found.difference[i] < 0.0 else "more"
+    return (
+        f"{100.0 * abs(found.difference[i]):.1f} % {side} fines by mass than {_plugs(found, i)} "
+        f"({_scatters(found, i)})"
+    )
+
+
+def _condition_words(assessment: Assessment, found: Found, i: int) -> str:
+    return f"described as {assessment.evidence.condition[assessment.place[i]]}"
+
+
+_FINDINGS: Mapping[str, Callable[[Assessment, Found, int], str]] = {
+    "permeability": _permeability_words,
+    "density log": _density_words,
+    "neighbours": _neighbour_words,
+    "packing": _packing_words,
+    "fines": _fines_words,
+    "condition": _condition_words,
+}
+
+
+def paragraph(row: Mapping[str, Any], unit: str, depth: float) -> str:
+    """One plug in prose that a geologist can argue with."""
+    verdict = row["crush verdict"]
+    head = f"{row['plug']} at {depth:.2f} {unit}: "
+    if verdict == "not assessed":
+        return f"{head}not assessed, for want of evidence. " + "; ".join(row["missing"]) + "."
+    kind = "" if row["direction"] == "none" else f", if so {row['direction']}"
+    told = [f"{item['finding']} ({_signed(item['effect'], 2)})" for item in row["evidence"]]
+    moves = f"from {row['by prior']['0.1']:.2f} at a prior of 0.1 to {row['by prior']['0.5']:.2f} at 0.5"
+    return (
+        f"{head}crush {verdict}, {row['crush likelihood [v/v]']:.2f}{kind}; {moves}. "
+        + " ".join(f"{_capital(text)}." for text in told)
+        + (f" Without: {'; '.join(row['missing'])}." if row["missing"] else "")
+    )
+
+
+def _capital(text: str) -> str:
+    return text[:1].upper() + text[1:]

@@ -16,7 +16,6 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
-from typing import cast
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -35,14 +34,14 @@ KINDS = ("compacted", "loosened", "shattered")
 COMPACTED_SHARE = 2.0 / 3.0
 """Share of damaged soft plugs that are compacted (assumed: falling porosity is the textbook direction)."""
 MOST_CHANGE_FRAC = MappingProxyType({"compacted": 0.08, "loosened": 0.08, "shattered": 0.05})
-"""Greatest change of porosity (assumed): sand at 0.35 down to the densest packing of equal spheres at 0.26, or
-up to the loosest at 0.43; hard rock opened by cracks."""
+"""Greatest change of porosity (assumed): sand at 0.35 down to the densest packing of equal spheres at 0.26,
+or up to the loosest at 0.43; hard rock opened by cracks."""
 CRUSHED_ZONE = 0.3
 """Least of permeability that crushed grains leave beside what porosity takes: the crushed zone about a
 perforation keeps 30 to 70 % (PetroWiki, glossary, 'perforation crush zone')."""
 CRACKED = 100.0
 """Greatest rise of permeability by cracks: about 100 times before failure, an upper bound from granite
-(Mitchell & Faulkner 2008, J. Geophys. Res. 113, B11412; abstract)."""
+(Mitchell & Faulkner 2008, abstract; J. Geophys. Res. 113, B11412, from memory)."""
 SOUND_FRAC, SOUND_DECADES = 0.005, 0.25 * EVENT_DECADES
 """What impact does to a plug that counts as sound: a quarter of the event, as a standard deviation (assumed:
 the stress of any bullet passes the onset of crushing at its nose, so nothing is quite untouched)."""
@@ -71,6 +70,8 @@ CONDITION = MappingProxyType(
 """How often a percussion plug is described so, by the mark that tells most: sound, compacted, loosened,
 shattered. Assumed: powder and shards in soft sand, cracks in hard rock (textbook directions), a third of
 damaged plugs looking well, one sound plug in seven looking damaged."""
+
+VALIDATION = "to be measured"
 
 UNLIKELY, LIKELY = 0.2, 0.7
 """Limits of the verdicts."""
@@ -235,8 +236,8 @@ def predict_level(
     Notes
     -----
     Normal values with conjugate priors (Gelman et al. 2013, "Bayesian data analysis", sec. 3.3, from memory):
-    k = k0 + W, m = (k0 m0 + sum w x)/k, nu s^2 = nu0 s0^2 + sum w (x - xbar)^2 + k0 W/k (xbar - m0)^2, nu = nu0
-    + n; predicted: t of nu degrees about m with scale s sqrt(1 + 1/k).
+    k = k0 + W, m = (k0 m0 + sum w x)/k, nu = nu0 + n, nu s^2 = nu0 s0^2 + sum w (x - xbar)^2 + k0 W/k (xbar -
+    m0)^2; predicted: t of nu degrees about m with scale s sqrt(1 + 1/k).
 
     >>> predicted, _ = predict_level([0.010, 0.014, 0.012], [1.0] * 3, 0.0, 0.02, 0.5, 4.0)
     >>> round(float(predicted.centre), 4), float(predicted.freedom)
@@ -354,7 +355,7 @@ def _student(residual: Array, scale_: Array, freedom: Array) -> Array:
     """Logarithm of the density of Student's t."""
     half = 0.5 * (freedom + 1.0)
     constant = special.loggamma(half) - special.loggamma(0.5 * freedom) - 0.5 * np.log(np.pi * freedom)
-    return cast("Array", constant - np.log(scale_) - half * np.log1p((residual / scale_) ** 2 / freedom))
+    return constant - np.log(scale_) - half * np.log1p((residual / scale_) ** 2 / freedom)
 
 
 def permeability_fit(
@@ -394,12 +395,13 @@ def permeability_fit(
 
     Notes
     -----
-    ln t_nu((r - (dK - b dphi))/s) - ln s: a plug that slides along the trend (dK = b dphi) leaves no residual.
+    ln t_nu((r - (dK - b dphi))/s) - ln s: a plug that slides along the trend (dK = b dphi) leaves no
+    residual.
 
     References
     ----------
-    Student's t of an external studentised residual: Cook, R. D. & Weisberg, S. 1982, "Residuals and influence in
-    regression", ch. 2 (from memory).
+    Student's t of an external studentised residual: Cook, R. D. & Weisberg, S. 1982, "Residuals and influence
+    in regression", ch. 2 (from memory).
 
     Examples
     --------
@@ -520,9 +522,7 @@ def neighbours_fit(
     )
 
 
-def packing_fit(
-    porosity_frac: ArrayLike, packing_frac: ArrayLike, porosity_change_frac: ArrayLike
-) -> Array:
+def packing_fit(porosity_frac: ArrayLike, packing_frac: ArrayLike, porosity_change_frac: ArrayLike) -> Array:
     """How well the porosity before impact fits what grains of this sorting can be packed to.
 
     Parameters
@@ -546,8 +546,8 @@ def packing_fit(
 
     Notes
     -----
-    -((phi - dphi - phi_p - 0.05)/0.02)^2/2 where the bracket is positive, else 0. A porosity below the packing
-    says nothing: cement and burial lower it too.
+    -((phi - dphi - phi_p - 0.05)/0.02)^2/2 where the bracket is positive, else 0. A porosity below the
+    packing says nothing: cement and burial lower it too.
 
     References
     ----------
@@ -654,8 +654,8 @@ def condition_fit(mark: ArrayLike, kind: ArrayLike) -> Array:
 
     References
     ----------
-    Assumed; its directions are textbook ones (1 common practice: powder and shards in soft sand, cracks in hard
-    rock). No published frequencies were found up to 2026.
+    Assumed; no published frequencies were found up to 2026. Directions are textbook ones: powder and shards
+    in soft sand, cracks in hard rock.
 
     Examples
     --------
@@ -786,7 +786,7 @@ def verdicts(likelihood_frac: ArrayLike, assessed: ArrayLike) -> NDArray[np.str_
 
 @dataclass(frozen=True, slots=True)
 class Skill:
-    """How good probabilities are: Brier score, that of the base rate, skill with its 95 % interval, and AUC."""
+    """How good probabilities are: Brier score, that of the base rate, skill with its 95 % interval, AUC."""
 
     brier: float
     base_brier: float
@@ -902,3 +902,167 @@ def left_out_mask(own: Prediction, values: ArrayLike) -> Mask:
     y = np.asarray(values, dtype=np.float64)
     t = np.abs(y - own.centre) / np.maximum(own.scale, 1e-12)
     return np.asarray(2.0 * special.stdtr(own.freedom, -t) * max(y.size, 1) < 0.01)
+
+
+_DPHI = Symbol("dphi", "porosity_change_frac", "v/v", "change of porosity by impact")
+_NU = Symbol("nu", "freedom", "", "degrees of freedom, at most 10")
+_FIT = "ln t_nu(({0})/s) - ln s, t_nu Student's density"
+
+FORMULAS: tuple[Formula, ...] = (
+    Formula(
+        "permeability-change-kozeny-carman",
+        1,
+        "Change of permeability with porosity alone",
+        "log10(k1/k0) = 3 log10(phi1/phi0) - 2 log10((1 - phi1)/(1 - phi0))",
+        (
+            Symbol("phi0", "porosity_before_frac", "v/v", "porosity before"),
+            Symbol("phi1", "porosity_after_frac", "v/v", "porosity after"),
+        ),
+        (Symbol("dK", "change_decades", "decades", "change of log10 permeability"),),
+        "granular rock, the grains unchanged; cracks raise permeability more",
+        "Carman 1937, Trans. Inst. Chem. Eng. 15:150-166 (from memory)",
+        "worked values for soft compaction and opened hard rock; limits",
+        kozeny_carman_change_decades,
+    ),
+    Formula(
+        "density-porosity",
+        1,
+        "Porosity from the density log",
+        "phi = (rho_ma - rho_b)/(rho_ma - rho_f)",
+        (
+            Symbol("rho_b", "bulk_density_g_cm3", "g/cm3", "log reading"),
+            Symbol("rho_ma", "matrix_density_g_cm3", "g/cm3", "density of the grains"),
+            Symbol("rho_f", "fluid_density_g_cm3", "g/cm3", "density of what fills the pores"),
+        ),
+        (Symbol("phi", "porosity_frac", "v/v", "porosity"),),
+        "good hole; light hydrocarbon makes it too high unless rho_f says so",
+        "balance of mass",
+        "worked values; sensitivities",
+        density_porosity_frac,
+    ),
+    Formula(
+        "impact-permeability",
+        1,
+        "Evidence: measured permeability against the undamaged trend",
+        _FIT.format("r - (dK - b dphi)"),
+        (
+            Symbol("r", "residual_decades", "decades", "residual from the trend of the other plugs"),
+            Symbol("s", "scale_decades", "decades", "scale of that prediction"),
+            _NU,
+            Symbol("b", "slope_decades", "decades per v/v", "slope of the trend"),
+            _DPHI,
+            Symbol("dK", "permeability_change_decades", "decades", "change of log10 permeability"),
+        ),
+        (Symbol("L", "log_density", "1/decades", "how well the change fits"),),
+        "measured permeability, 8 undamaged plugs or more; never one estimated from texture",
+        "external studentised residual: Cook & Weisberg 1982, ch. 2 (from memory); at most 10 assumed",
+        "residual of a worked example; sign by rock class; no residual along the trend",
+        permeability_fit,
+    ),
+    Formula(
+        "impact-density-log",
+        1,
+        "Evidence: plug porosity against the density log",
+        _FIT.format("d - dphi"),
+        (
+            Symbol("d", "difference_frac", "v/v", "plug less log, less the same of undamaged plugs"),
+            Symbol("s", "scale_frac", "v/v", "scale of that prediction"),
+            _NU,
+            _DPHI,
+        ),
+        (Symbol("L", "log_density", "1/(v/v)", "how well the change fits"),),
+        "good hole; centred on core and rotary plugs of the rock class, since ambient porosity stands above "
+        "in-situ; before any plug is compared, scatter 0.02 and 0.005 (hard) to 0.02 (soft) above (assumed)",
+        "Student's t: Gosset 1908, Biometrika 6:1-25 (from memory); priors assumed",
+        "placebo: a log shifted by metres loses its power",
+        density_fit,
+    ),
+    Formula(
+        "impact-neighbours",
+        1,
+        "Evidence: plug porosity against neighbours of its bed",
+        _FIT.format("e - beta d - (1 - beta) dphi"),
+        (
+            Symbol("e - beta d", "difference_frac", "v/v", "plug less neighbours, less what the log told"),
+            Symbol("s", "scale_frac", "v/v", "scale of that prediction"),
+            _NU,
+            Symbol("beta", "shared", "", "slope of e on d among undamaged plugs"),
+            _DPHI,
+        ),
+        (Symbol("L", "log_density", "1/(v/v)", "how well the change fits"),),
+        "core and rotary plugs within 3 m, weight falling over 1 m; further off weight 0.5 (assumed)",
+        "regression of one difference on the other; distances and weight assumed",
+        "placebo: shuffled facies lose their power; a plug is never its own neighbour",
+        neighbours_fit,
+    ),
+    Formula(
+        "impact-packing",
+        1,
+        "Evidence: porosity against the limit of packing",
+        "-((phi - dphi - phi_p - 0.05)/0.02)^2/2 where positive, else 0",
+        (
+            Symbol("phi", "porosity_frac", "v/v", "plug porosity"),
+            Symbol("phi_p", "packing_frac", "v/v", "porosity of packed sand of its sorting"),
+            _DPHI,
+        ),
+        (Symbol("L", "log_fit", "", "how well the change fits"),),
+        "soft sand; sorting from undamaged plugs of the facies where described",
+        "Beard & Weyl 1973, AAPG Bull. 57:349-369 (abstract: field sands within 0.05); width 0.02 assumed",
+        "limits",
+        packing_fit,
+    ),
+    Formula(
+        "impact-fines",
+        1,
+        "Evidence: fines beyond the facies",
+        _FIT.format("f - df"),
+        (
+            Symbol("f", "excess_frac", "v/v", "share of fines less that of undamaged plugs"),
+            Symbol("s", "scale_frac", "v/v", "scale of that prediction"),
+            _NU,
+            Symbol("df", "fines_added_frac", "v/v", "fines that damage adds"),
+        ),
+        (Symbol("L", "log_density", "1/(v/v)", "how well the change fits"),),
+        "sieved plug and two sieved references; damage adds up to 0.10, half of it none (assumed)",
+        "Hardin 1985, J. Geotech. Eng. 111:1177-1192 (from memory); amounts assumed",
+        "limits",
+        fines_fit,
+    ),
+    Formula(
+        "impact-condition",
+        1,
+        "Evidence: described condition",
+        "ln P(mark | kind), from a table",
+        (
+            Symbol("mark", "mark", "", "powdered, cracked, crumbled, disked, chipped or intact"),
+            Symbol("kind", "kind", "", "sound, compacted, loosened or shattered"),
+        ),
+        (Symbol("L", "log_fit", "", "how often it is described so"),),
+        "the mark that tells most; firmness is the rock's and no evidence",
+        "assumed frequencies: " + "; ".join(f"{m} {'/'.join(map(str, v))}" for m, v in CONDITION.items()),
+        "every column of the table sums to 1",
+        condition_fit,
+    ),
+    Formula(
+        "impact",
+        1,
+        "Likelihood that impact changed porosity by more than 0.02 or permeability by more than 2 times",
+        "logit p = logit(prior) + sum of w_i ln LR_i, each |ln LR_i| at most ln 10",
+        (
+            Symbol("prior", "prior_frac", "v/v", "likelihood before any evidence: the setting 'crush prior'"),
+            Symbol("sum", "evidence_log_odds", "", "sum of the effects of the evidence"),
+        ),
+        (Symbol("p", "likelihood_frac", "v/v", "crush likelihood"),),
+        "percussion plugs only. LR_i: the changes that damage may make against none, given those before. "
+        "Changes, evenly: compacted (2 of 3 in soft rock, assumed) porosity -0.08 to 0, permeability to "
+        "0.3 of what porosity takes; loosened porosity 0 to 0.08, permeability unchanged to what porosity "
+        "gives; shattered (hard rock) porosity 0 to 0.05, permeability up to 100 times. Sound plugs change by "
+        "a quarter of the event (assumed). Grain density off its facies is no evidence; it halves the weight "
+        "of what rests on the plug's volumes (assumed). Prior 0.3 is an assumption: no share of damaged "
+        "plugs is published",
+        "log-odds: Good 1950 (from memory); bounds: Beard & Weyl 1973, PetroWiki 'perforation crush zone', "
+        "Mitchell & Faulkner 2008, Carman 1937; 'assumed' where said. Nothing was fitted to a simulation",
+        VALIDATION,
+        likelihood_frac,
+    ),
+)

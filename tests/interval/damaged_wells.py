@@ -1,16 +1,16 @@
-"""Wells simulated from a declared law of damage, for holding the likelihood against truth. Simulated, not real.
+"""Wells simulated from a declared law of damage, to hold the likelihood against truth: simulated, not real.
 
-The law. Beds 2 to 5 m thick of a soft and a hard sand in turn: porosity of a bed wanders about 0.29 and 0.15 (sd
-0.012 from bed to bed, 0.012 within), log10 k = a + b porosity + scatter (soft 13 decades per unit of porosity
-and 0.15 decades, hard 17 and 0.20). A share of the percussion plugs is damaged: soft ones compacted (two of
-three: porosity less 0.025 to 0.07, permeability along the trend and times 0.4 to 0.9) or loosened (porosity
-more by 0.025 to 0.06, permeability times 1 to 1.5), hard ones shattered (porosity more by 0.021 to 0.05,
-permeability times 3 to 30). Sound percussion plugs change by nothing.
+The law. Beds 2 to 5 m thick of a soft and a hard sand in turn: porosity of a bed wanders about 0.29 and 0.15
+(sd 0.012 from bed to bed, 0.012 within), log10 k = a + b porosity + scatter (soft 13 decades per unit of
+porosity and 0.15 decades, hard 17 and 0.20). A share of the percussion plugs is damaged: soft ones compacted
+(two of three: porosity less 0.025 to 0.07, permeability along the trend and times 0.4 to 0.9) or loosened
+(porosity more by 0.025 to 0.06, permeability times 1 to 1.5), hard ones shattered (porosity more by 0.021 to
+0.05, permeability times 3 to 30). Sound percussion plugs change by nothing.
 
 What is seen: porosity to 0.005, log10 k to 0.03, a density log with 0.02 g/cm3 of noise a sample (every 0.1524
-m) over 0.4 m of rock in situ (0.015 less porosity in the soft sand), conditions of which one in seven is wrong,
-firmness of which one in ten is wrong. Core lies at driller's depth, off by a bulk shift; `matched` leaves 0.1 m
-of that.
+m) over 0.4 m of rock in situ (0.015 less porosity in the soft sand), conditions of which one in seven is
+wrong and three in ten of the damaged ones are missed, firmness of which one in ten is wrong. Matching leaves
+core depths off by 0.1 m (sd).
 """
 
 from __future__ import annotations
@@ -152,10 +152,6 @@ def without(evidence: Evidence, *what: str) -> Evidence:
         evidence = replace(evidence, condition=empty, firmness=empty, sorting_phi=np.full(n, np.nan))
     if "core" in what:
         kept = evidence.source == "percussion sidewall"
-        columns = {
-            name: getattr(evidence, name)[kept]
-            for name in Evidence.__slots__
-            if name != "log"
-        }
+        columns = {name: getattr(evidence, name)[kept] for name in Evidence.__slots__ if name != "log"}
         evidence = Evidence(**columns, log=evidence.log)
     return evidence
