@@ -15,6 +15,7 @@ import numpy as np
 import pandas as pd
 import sqlalchemy as sa
 from numpy.typing import NDArray
+from scipy import special
 
 from corelab import units
 from corelab.bench import settings as lab_settings
@@ -265,13 +266,17 @@ def _terms(found: Mapping[str, Found], porosity: Array, changes: science.Damage)
     most = np.array([science.FINES_ADDED_FRAC[kind] for kind in science.KINDS])[changes.kind]
     reach = np.array([science.MOST_CHANGE_FRAC[kind] for kind in science.KINDS])[changes.kind]
     added = most * np.abs(dphi) / reach
+    no_fines = science.fines_fit(f.difference, f.scale, f.freedom, zero)
     add(
         "fines",
-        science.fines_fit(f.difference, f.scale, f.freedom, zero),
-        np.logaddexp(
-            np.log(NO_FINES_SHARE) + science.fines_fit(f.difference, f.scale, f.freedom, zero)[:, np.newaxis],
-            np.log1p(-NO_FINES_SHARE)
-            + science.fines_fit(wide(f.difference), wide(f.scale), wide(f.freedom), added),
+        no_fines,
+        special.logsumexp(
+            [
+                np.log(NO_FINES_SHARE) + np.broadcast_to(wide(no_fines), dphi.shape),
+                np.log1p(-NO_FINES_SHARE)
+                + science.fines_fit(wide(f.difference), wide(f.scale), wide(f.freedom), added),
+            ],
+            axis=0,
         ),
     )
     mark = found["condition"].label.astype(np.str_)
@@ -357,10 +362,14 @@ class _Rock:
         into.label[at] = label
 
     def permeability(self) -> Found:
-        """Measured permeability against the trend of undamaged plugs of the same facies or rock class."""
+        """Measured permeability against the trend of undamaged plugs of the same facies or rock class.
+
+        Where residuals of neighbours go together, what those within reach tell of the bed is taken off, in
+        the share that their own neighbours show.
+        """
         e = self.evidence
         found = Found.none(self.n)
-        found.more["slope"] = np.full(self.n, np.nan)
+        found.more["slope"], found.more["bed"] = np.full(self.n, np.nan), np.zeros(self.n)
         phi, log_k = e.porosity_frac, e.log_permeability
         usable = np.isfinite(phi) & np.isfinite(log_k)
         found.reason[:] = f"fewer than {FEWEST} undamaged plugs with porosity and measured permeability"
@@ -373,6 +382,16 @@ class _Rock:
                 continue
             self._put(found, at, fit, log_k[self.judged], line.predicted, line.own, label)
             found.more["slope"][at] = line.slope
+            residual = log_k[fit] - line.own.centre
+            bed = _from_neighbours(e.depth_m, residual, fit, fit, 0.0)
+            if np.count_nonzero(bed.near) < FEWEST:
+                continue
+            share = _slope(bed.local_frac[bed.near], residual[bed.near], 1.0)
+            left = residual[bed.near] - share * bed.local_frac[bed.near]
+            here = _from_neighbours(e.depth_m, residual, fit, self.judged[at], 0.0)
+            found.difference[at] -= share * here.local_frac
+            found.scale[at] *= np.where(here.near, np.std(left) / np.std(residual[bed.near]), 1.0)
+            found.more["bed"][at] = np.where(here.near, share, 0.0)
         there = usable[self.judged]
         found.difference[~there] = np.nan
         reason = np.where(
@@ -430,8 +449,8 @@ class _Rock:
         phi = e.porosity_frac
         found.reason[:] = "no core or rotary plug of its facies or rock class"
         for at, fit, label in self.groups(np.isfinite(phi), 2):
-            of_fit = _from_neighbours(e.depth_m, phi, fit, fit)
-            expected = _from_neighbours(e.depth_m, phi, fit, self.judged[at])
+            of_fit = _from_neighbours(e.depth_m, phi[fit], fit, fit)
+            expected = _from_neighbours(e.depth_m, phi[fit], fit, self.judged[at])
             few = np.count_nonzero(of_fit.near) < 2
             far = phi[fit] - of_fit.far_frac
             scatter = float(np.std(far)) if fit.size >= FEWEST else FACIES_SCATTER_FRAC
@@ -547,12 +566,12 @@ def _by_porosity(porosity_frac: Array) -> Array:
     return np.clip((porosity_frac - SOFT_MIDDLE_FRAC) / SOFT_STEP_FRAC, -SOFT_MOST, SOFT_MOST)
 
 
-def _slope(x: Array, y: Array) -> float:
+def _slope(x: Array, y: Array, most: float = 0.9) -> float:
     """Share of x that comes again in y."""
     if x.size < FEWEST or np.ptp(x) == 0.0:
         return SHARED
     centred = x - x.mean()
-    return float(np.clip(centred @ (y - y.mean()) / (centred @ centred), 0.0, 0.9))
+    return float(np.clip(centred @ (y - y.mean()) / (centred @ centred), 0.0, most))
 
 
 def _matrix(grain_density_g_cm3: Array, fit: NDArray[np.intp]) -> float:
@@ -572,7 +591,7 @@ def _without_strays(phi: Array, log_k: Array, fit: NDArray[np.intp]) -> NDArray[
 
 @dataclass(frozen=True, slots=True)
 class _Expected:
-    """Porosity expected of plugs from those within `NEIGHBOURS_M`, and from all of the group."""
+    """What is expected of plugs from those within `NEIGHBOURS_M`, and from all of the group."""
 
     local_frac: Array
     far_frac: Array
@@ -581,16 +600,25 @@ class _Expected:
 
 
 def _from_neighbours(
-    depth_m: Array, phi: Array, fit: NDArray[np.intp], targets: NDArray[np.intp]
+    depth_m: Array,
+    values: Array,
+    fit: NDArray[np.intp],
+    targets: NDArray[np.intp],
+    level: float | None = None,
 ) -> _Expected:
-    """What references other than the plug itself let one expect, the nearer the more."""
+    """What references (`values` of each) other than the plug itself let one expect, the nearer the more.
+
+    Without near ones, their mean, or `level` where that is known.
+    """
     away = np.abs(depth_m[targets, np.newaxis] - depth_m[fit])
     itself = targets[:, np.newaxis] == fit
     close = (away <= NEIGHBOURS_M) & ~itself
     weight = np.where(close, np.exp(-np.where(close, away, 0.0) / FALL_M), 0.0)
     others = np.maximum((~itself).sum(axis=1), 1)
-    far = (phi[fit].sum() - np.where(itself, phi[fit], 0.0).sum(axis=1)) / others
-    local = (weight @ phi[fit] + LEVEL_PLUGS * far) / (weight.sum(axis=1) + LEVEL_PLUGS)
+    far = (values.sum() - np.where(itself, values, 0.0).sum(axis=1)) / others
+    if level is not None:
+        far = np.full(targets.shape, level)
+    local = (weight @ values + LEVEL_PLUGS * far) / (weight.sum(axis=1) + LEVEL_PLUGS)
     return _Expected(local, far, close.any(axis=1), close.sum(axis=1))
 
 
@@ -932,9 +960,10 @@ def _permeability_words(assessment: Assessment, found: Found, i: int) -> str:
     side = "below" if found.difference[i] < 0.0 else "above"
     rock = _rock_words(assessment, i)
     sign = {"soft rock": "low", "hard rock": "high"}.get(rock, "either")
+    bed = ", its neighbours' own part taken off" if found.more["bed"][i] > 0.0 else ""
     return (
         f"measured {k:.4g} mD lies a factor of {10.0 ** abs(found.difference[i]):.2g} {side} the trend of "
-        f"{_plugs(found, i)} at its porosity ({_scatters(found, i)}); in {rock} {sign} is suspicious"
+        f"{_plugs(found, i)} at its porosity{bed} ({_scatters(found, i)}); in {rock} {sign} is suspicious"
     )
 
 

@@ -71,8 +71,6 @@ CONDITION = MappingProxyType(
 shattered. Assumed: powder and shards in soft sand, cracks in hard rock (textbook directions), a third of
 damaged plugs looking well, one sound plug in seven looking damaged."""
 
-VALIDATION = "to be measured"
-
 UNLIKELY, LIKELY = 0.2, 0.7
 """Limits of the verdicts."""
 RECALIBRATION_LABELS = 30
@@ -300,8 +298,8 @@ def damage(porosity_frac: ArrayLike, slope_decades: ArrayLike, soft_share: Array
     -----
     Porosity changes evenly up to `MOST_CHANGE_FRAC`. Permeability evenly between bounds: compacted, from what
     porosity alone takes (Kozeny-Carman or along the trend, the lesser) to the greater of the two and 30 % of
-    that; loosened, from unchanged to what porosity alone gives; shattered, from what porosity alone gives to
-    100 times. Changes below the event are left out.
+    that; loosened, from unchanged to what porosity alone gives (the greater); shattered, from what porosity
+    alone gives (Kozeny-Carman: cracks do more) to 100 times. Changes below the event are left out.
     """
     phi = np.clip(np.asarray(porosity_frac, dtype=np.float64), 0.005, 0.60)[:, np.newaxis]
     slope = np.asarray(slope_decades, dtype=np.float64)[:, np.newaxis]
@@ -329,7 +327,7 @@ def damage(porosity_frac: ArrayLike, slope_decades: ArrayLike, soft_share: Array
         moved = low[:, :, np.newaxis] + (high - low)[:, :, np.newaxis] * parts
         shifted = np.broadcast_to(change[:, :, np.newaxis], moved.shape)
         matters = (np.abs(shifted) > EVENT_POROSITY_FRAC) | (np.abs(moved) > EVENT_DECADES)
-        flat = moved.shape[0], -1
+        flat = moved.shape[0], POROSITY_STEPS * PERMEABILITY_STEPS
         count = matters.reshape(flat).sum(axis=1)
         with np.errstate(divide="ignore"):
             share = np.log(shares[kind]) - np.log(count)
@@ -904,6 +902,24 @@ def left_out_mask(own: Prediction, values: ArrayLike) -> Mask:
     return np.asarray(2.0 * special.stdtr(own.freedom, -t) * max(y.size, 1) < 0.01)
 
 
+VALIDATION = (
+    "Simulated, by a declared law (soft and hard sand in turn, 35 % damaged, noisy log and words; seeds "
+    "never used in building), 1200 plugs of 20 wells: area under the curve 0.99, Brier skill 0.83 (95 % "
+    "interval 0.79 to 0.86), mean 0.35 where 0.35 were damaged. Of plugs called unlikely (mean 0.04) 0.02"
+    " were damaged, of those possible (0.43) 0.48, of those likely (0.94) 0.97. Run blind, 0.8 % of 2640 "
+    "core and rotary plugs are called likely. In harder wells (twice the scatter, marks at random, half "
+    "the core), area and skill: 0.89 and 0.43. Skill without the log 0.79, without descriptions 0.76, "
+    "without core and rotary 0.46, with descriptions alone 0.36; with nothing the prior comes back. "
+    "Against rotary twins that lie within 0.1 m, as noisy labels, area 0.89. Placebos: a log shifted by "
+    "4.7 m loses more than half of what it counts, shuffled facies cost skill; neither makes false "
+    "certainty. One-signed rules (low permeability, low porosity) rank such wells like chance. On a real "
+    "core (Norwegian well 7121/8-1, sound, trend scattered over decades), blind, 0.8 % of 249 plugs are "
+    "called likely; shattered by the same law, without log or descriptions, area and skill are only 0.75 "
+    "and 0.16: evidence that scatters tells little, and the likelihood stays near the prior. Not tested: "
+    "plugs whose damage was seen in a scan, of which none are published; damage by another law; wrong "
+    "priors move the mean, not the order"
+)
+
 _DPHI = Symbol("dphi", "porosity_change_frac", "v/v", "change of porosity by impact")
 _NU = Symbol("nu", "freedom", "", "degrees of freedom, at most 10")
 _FIT = "ln t_nu(({0})/s) - ln s, t_nu Student's density"
@@ -1055,11 +1071,11 @@ FORMULAS: tuple[Formula, ...] = (
         (Symbol("p", "likelihood_frac", "v/v", "crush likelihood"),),
         "percussion plugs only. LR_i: the changes that damage may make against none, given those before. "
         "Changes, evenly: compacted (2 of 3 in soft rock, assumed) porosity -0.08 to 0, permeability to "
-        "0.3 of what porosity takes; loosened porosity 0 to 0.08, permeability unchanged to what porosity "
-        "gives; shattered (hard rock) porosity 0 to 0.05, permeability up to 100 times. Sound plugs change by "
-        "a quarter of the event (assumed). Grain density off its facies is no evidence; it halves the weight "
-        "of what rests on the plug's volumes (assumed). Prior 0.3 is an assumption: no share of damaged "
-        "plugs is published",
+        "0.3 of what porosity takes; loosened porosity 0 to 0.08, permeability unchanged to what "
+        "porosity gives; shattered (hard rock) porosity 0 to 0.05, permeability by more, to 100 times. "
+        "Sound plugs change by a quarter of the event (assumed). Grain density off its facies is no "
+        "evidence; it halves the weight of what rests on the plug's volumes (assumed). Prior 0.3 is an "
+        "assumption: no share of damaged plugs is published",
         "log-odds: Good 1950 (from memory); bounds: Beard & Weyl 1973, PetroWiki 'perforation crush zone', "
         "Mitchell & Faulkner 2008, Carman 1937; 'assumed' where said. Nothing was fitted to a simulation",
         VALIDATION,

@@ -7,10 +7,10 @@ porosity and 0.15 decades, hard 17 and 0.20). A share of the percussion plugs is
 (porosity more by 0.025 to 0.06, permeability times 1 to 1.5), hard ones shattered (porosity more by 0.021 to
 0.05, permeability times 3 to 30). Sound percussion plugs change by nothing.
 
-What is seen: porosity to 0.005, log10 k to 0.03, a density log with 0.02 g/cm3 of noise a sample (every 0.1524
-m) over 0.4 m of rock in situ (0.015 less porosity in the soft sand), conditions of which one in seven is
-wrong and three in ten of the damaged ones are missed, firmness of which one in ten is wrong. Matching leaves
-core depths off by 0.1 m (sd).
+What is seen: porosity to 0.005, log10 k to 0.03, a density log with 0.02 g/cm3 of noise a sample (every
+0.1524 m) over 0.4 m of rock in situ (0.015 less porosity in the soft sand), conditions of which one in seven
+is wrong and three in ten of the damaged ones are missed, firmness of which one in ten is wrong. Matching
+leaves core depths off by 0.1 m (sd).
 """
 
 from __future__ import annotations
@@ -61,6 +61,7 @@ class Law:
     touched_frac: float = 0.0
     core_depth_error_m: float = 0.1
     core_share: float = 0.6  # of the height in which plugs were shot
+    twins: bool = False  # each rotary plug is drilled within 0.1 m of a shot
 
 
 def simulate(seed: int, law: Law | None = None) -> Simulated:
@@ -91,6 +92,9 @@ def simulate(seed: int, law: Law | None = None) -> Simulated:
     core_top = top + 0.5 * (1 - law.core_share) * length
     spaced = np.linspace(core_top, core_top + law.core_share * length, law.core)
     depth[~shot] = spaced + rng.uniform(-0.05, 0.05, law.core)
+    if law.twins:
+        beside = rng.uniform(-0.1, 0.1, law.rotary)
+        depth[source == "rotary sidewall"] = depth[: law.rotary] + beside
     place = np.clip(np.searchsorted(z, depth), 0, z.size - 1)
     is_soft, true = soft[place], phi[place].copy()
     a, b = np.where(is_soft, -0.9, -2.6), np.where(is_soft, 13.0, 17.0)
@@ -143,15 +147,16 @@ def simulate(seed: int, law: Law | None = None) -> Simulated:
 
 
 def without(evidence: Evidence, *what: str) -> Evidence:
-    """The same well without its log, its descriptions, or its core and rotary plugs."""
+    """The same well without its log, descriptions, `core` and rotary plugs, or `rotary` ones only."""
     n = len(evidence)
     if "log" in what:
         evidence = replace(evidence, log=None)
     if "descriptions" in what:
         empty = np.full(n, "", object)
         evidence = replace(evidence, condition=empty, firmness=empty, sorting_phi=np.full(n, np.nan))
-    if "core" in what:
-        kept = evidence.source == "percussion sidewall"
+    if "core" in what or "rotary" in what:
+        gone = ["core", "rotary sidewall"] if "core" in what else ["rotary sidewall"]
+        kept = ~np.isin(evidence.source, gone)
         columns = {name: getattr(evidence, name)[kept] for name in Evidence.__slots__ if name != "log"}
         evidence = Evidence(**columns, log=evidence.log)
     return evidence
