@@ -225,12 +225,18 @@ class Lab:
         ]
         return pd.DataFrame(rows)
 
-    def _set(self, name: str, value: str) -> None:
+    def _set(
+        self,
+        name: str,
+        value: str,
+        act: str = "change settings",
+        detail: Mapping[str, object] | None = None,
+    ) -> None:
         setting = lab_settings.setting_named(name)
         text = lab_settings.checked(name, value)
         if setting.name == "report units":
             text = ", ".join(entitled.checked_units(text))
-        with self._writing("change settings") as (connection, person):
+        with self._writing(act) as (connection, person):
             stored = store.settings(connection)
             if stored.get(setting.name) == text:
                 return
@@ -241,7 +247,8 @@ class Lab:
                 identities = store.Identities.read(connection)
                 stored[setting.name] = text
                 compute.keep(connection, list(identities.names["plug"]), stored)
-            self._close(change, person, "setting", {"name": setting.name, "value": text})
+            kept = {"name": setting.name, "value": text, **(detail or {})}
+            self._close(change, person, "setting" if detail is None else "recalibrate", kept)
 
     def person_add(self, name: str, role: str) -> None:
         """Register a person, or give a registered one another role."""
@@ -842,7 +849,12 @@ class Lab:
             }
             found = impact.recalibrated(impact.labelled(connection, frames, stored), stored)
         if adopt:
-            self._set("crush recalibration", found["setting"])
+            shown = {
+                "verdicts": found["verdicts"],
+                "skill as it was": round(found["as it is"]["skill"], 4),
+                "cross-validated skill": round(found["recalibrated"]["skill"], 4),
+            }
+            self._set("crush recalibration", found["setting"], "recalibrate the crush likelihood", shown)
         return found
 
     def history(self, well: str = "", plug: str = "") -> pd.DataFrame:

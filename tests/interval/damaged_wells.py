@@ -16,8 +16,10 @@ leaves core depths off by 0.1 m (sd).
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from pathlib import Path
 
 import numpy as np
+import pandas as pd
 from numpy.typing import NDArray
 
 from corelab.interval.impact import DensityLog, Evidence
@@ -34,6 +36,10 @@ class Simulated:
     evidence: Evidence
     damaged: NDArray[np.bool_]
     kind: NDArray[np.str_]
+    log_depth_m: NDArray[np.float64]  # true, of every plug
+    gamma_gapi: NDArray[np.float64]  # of the log, at its depths
+    core_gamma: NDArray[np.float64]  # (n, 2): driller's depth and reading
+    shift_m: float  # log depth less driller's depth of the core
 
 
 @dataclass(frozen=True)
@@ -143,7 +149,106 @@ def simulate(seed: int, law: Law | None = None) -> Simulated:
         fines_frac=np.full(n, np.nan),
         log=DensityLog(log_z, log_rho, np.zeros(log_z.size, bool)),
     )
-    return Simulated(evidence, hit[percussion], kind[percussion].astype(str))
+    shale = np.convolve(rng.normal(0, 60, z.size), np.hanning(30) / np.hanning(30).sum(), "same")
+    gamma = np.where(soft, 35.0, 60.0) + shale
+    gamma_log = np.interp(log_z, z, np.convolve(gamma, np.ones(6) / 6, "same"))
+    gamma_log += rng.normal(0, 1.5, log_z.size)
+    shift = float(rng.uniform(-2.5, 2.5))
+    scanned = np.arange(core_top - 1, core_top + law.core_share * length + 1, 0.1)
+    read = 0.9 * np.interp(scanned, z, np.convolve(gamma, np.ones(3) / 3, "same")) + 4
+    read = np.maximum(read + rng.normal(0, 2.5, scanned.size), 0.0)
+    return Simulated(
+        evidence,
+        hit[percussion],
+        kind[percussion].astype(str),
+        depth,
+        gamma_log,
+        np.stack([scanned - shift, read], axis=1),
+        shift,
+    )
+
+
+def write_sheets(well: Simulated, name: str, folder: Path) -> Path:
+    """Bench sheets of a simulated well, as a technician would have filled them in, and its log as LAS.
+
+    Returns
+    -------
+    Path
+        The log; the sheets lie in `folder / "bench"`.
+    """
+    bench = folder / "bench"
+    bench.mkdir(parents=True, exist_ok=True)
+    e = well.evidence
+    core = e.source == "core"
+    names = [f"{'C' if c else 'S'}{i}" for i, c in enumerate(core)]
+    # what is shot is measured smaller
+    length, diameter = np.where(core, 50.0, 30.0), np.where(core, 38.0, 24.0)
+    bulk = np.pi / 4 * diameter**2 * length / 1000
+    grain = bulk * (1 - e.porosity_frac)
+    drilled = well.log_depth_m - well.shift_m
+
+    def put(kind: str, rows: list[dict[str, object]]) -> None:
+        pd.DataFrame(rows).to_csv(bench / f"{kind}.csv", index=False)
+
+    ids = [{"well": name, "plug": p} for p in names]
+    put("jobs", [{"job": "simulated", "laboratory": "simulated"}])
+    put("wells", [{"well": name, "job": "simulated", "depth unit": "m"}])
+    top, base = well.core_gamma[0, 0], well.core_gamma[-1, 0]
+    cut = {"top depth [m]": top, "base depth [m]": base, "recovered length [m]": base - top}
+    put("core runs", [{"well": name, "run": "1", **cut}])
+    tools = np.where(e.source == "percussion sidewall", "percussion", "rotary")
+    shots = [
+        {"well": name, "gun run": t, "shot": i, "depth [m]": round(z, 3), "tool": t, "outcome": "recovered"}
+        for i, (t, z, c) in enumerate(zip(tools, well.log_depth_m, core, strict=True))
+        if not c
+    ]
+    put("sidewall shots", shots)
+    plugs: list[dict[str, object]] = []
+    for i, row in enumerate(ids):
+        from_core = {"from": "core", "run": "1", "depth [m]": round(drilled[i], 3)}
+        from_wall = {"from": "sidewall", "gun run": tools[i], "shot": f"{i}"}
+        from_wall["depth [m]"] = round(well.log_depth_m[i], 3)
+        plugs.append(row | {"facies": e.facies[i]} | (from_core if core[i] else from_wall))
+    put("plugs", plugs)
+    put(
+        "descriptions",
+        [
+            row | {"lithology": "sandstone", "firmness": f, "condition": c}
+            for row, f, c in zip(ids, e.firmness, e.condition, strict=True)
+        ],
+    )
+    sizes = zip(ids, length, diameter, strict=True)
+    put("dimensions", [row | {"length 1 [mm]": a, "diameter 1 [mm]": d} for row, a, d in sizes])
+    mass = np.round(grain * e.grain_density_g_cm3, 4)
+    put("masses", [row | {"condition": "dry", "mass [g]": m} for row, m in zip(ids, mass, strict=True)])
+    volume = zip(ids, np.round(grain, 4), strict=True)
+    put("grain volume", [row | {"instrument": "POR", "grain volume [cm3]": v} for row, v in volume])
+    put(
+        "reported permeability",
+        [
+            row | {"permeameter": "PD", "klinkenberg permeability [mD]": f"{10.0**k:.5g}"}
+            for row, k in zip(ids, e.log_permeability, strict=True)
+        ],
+    )
+    put(
+        "core gamma",
+        [
+            {"well": name, "run": "1", "depth [m]": round(z, 2), "gamma [gAPI]": round(g, 1)}
+            for z, g in well.core_gamma
+        ],
+    )
+    assert e.log is not None
+    z = e.log.depth_m
+    lines = [
+        "~Version", "VERS. 2.0 :", "WRAP. NO :", "~Well", f"STRT.M {z[0]:.4f} :", f"STOP.M {z[-1]:.4f} :",
+        f"STEP.M {z[1] - z[0]:.4f} :", "NULL. -999.25 :", f"WELL. {name} :", "~Curve", "DEPT.M :",
+        "GR.GAPI : gamma ray", "RHOB.G/C3 : bulk density", "~ASCII",
+    ]  # fmt: skip
+    columns = zip(z, well.gamma_gapi, e.log.density_g_cm3, strict=True)
+    lines += [f"{d:.4f} {g:.3f} {r:.4f}" for d, g, r in columns]
+    path = folder / f"{name}.las"
+    path.write_text("\n".join([*lines, ""]), encoding="ascii")
+    return path
 
 
 def without(evidence: Evidence, *what: str) -> Evidence:

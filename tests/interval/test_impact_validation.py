@@ -8,7 +8,6 @@ alarm; and damaged by the declared law where the test says so.
 
 from __future__ import annotations
 
-import os
 import re
 from pathlib import Path
 
@@ -164,11 +163,8 @@ def test_twins():
 
 
 @pytest.fixture(scope="module")
-def norwegian_core() -> pd.DataFrame:
-    folder = os.environ.get("CORELAB_OPEN_DATA", "")
-    if not folder:
-        pytest.skip("CORELAB_OPEN_DATA is not set")
-    frame = pd.read_csv(Path(folder) / "norway_7121_8-1" / "nod_7121_8-1_core_plugs.csv")
+def norwegian_core(open_data: Path) -> pd.DataFrame:
+    frame = pd.read_csv(open_data / "norway_7121_8-1" / "nod_7121_8-1_core_plugs.csv")
     return frame[(frame["kKl_h"] > 0) & frame["por_h"].notna()].reset_index(drop=True)
 
 
