@@ -62,8 +62,9 @@ SOFT_LIMIT = 3.0
 MATRIX_G_CM3, FLUID_G_CM3 = 2.65, 1.0
 #: Washed out beyond the bit by so much, or corrected by more: the pad has lost the wall (common practice).
 WASHOUT_MM, CORRECTION_G_CM3 = 38.0, 0.10
-#: A grain density off its facies by more than this, and beyond its scatter (assumed).
-OFF_DENSITY_G_CM3, OFF_DENSITY_T = 0.03, 3.0
+#: Scatter of grain density in a facies, before any plug is compared; off by more than so much, and so many times
+#: its scatter, it is strange (assumed).
+GRAIN_SCATTER_G_CM3, OFF_DENSITY_G_CM3, OFF_DENSITY_T = 0.01, 0.03, 3.0
 #: The sand limit, and the sieves that come near it (mm).
 FINES_MM, FINES_WITHIN_MM = 0.0625, (0.053, 0.080)
 
@@ -386,10 +387,10 @@ class _Rock:
             bed = _from_neighbours(e.depth_m, residual, fit, fit, 0.0)
             if np.count_nonzero(bed.near) < FEWEST:
                 continue
-            share = _slope(bed.local_frac[bed.near], residual[bed.near], 1.0)
-            left = residual[bed.near] - share * bed.local_frac[bed.near]
+            share = _slope(bed.local[bed.near], residual[bed.near], 1.0)
+            left = residual[bed.near] - share * bed.local[bed.near]
             here = _from_neighbours(e.depth_m, residual, fit, self.judged[at], 0.0)
-            found.difference[at] -= share * here.local_frac
+            found.difference[at] -= share * here.local
             found.scale[at] *= np.where(here.near, np.std(left) / np.std(residual[bed.near]), 1.0)
             found.more["bed"][at] = np.where(here.near, share, 0.0)
         there = usable[self.judged]
@@ -407,13 +408,10 @@ class _Rock:
         """
         e = self.evidence
         found, whole = Found.none(self.n), np.full(len(e), np.nan)
-        difference = e.porosity_frac - self.log_frac
-        usable = np.isfinite(difference)
+        usable = np.isfinite(e.porosity_frac - self.log_frac)
         for at, fit, label in self.groups(usable, 0):
-            matrix = _matrix(e.grain_density_g_cm3, fit)
-            if matrix != MATRIX_G_CM3:
-                log_frac, _ = _log_porosity(e.log, e.depth_m, matrix)
-                difference = e.porosity_frac - log_frac
+            log_frac, _ = _log_porosity(e.log, e.depth_m, _matrix(e.grain_density_g_cm3, fit))
+            difference = e.porosity_frac - log_frac
             soft = bool(self.rock_class[self.judged[at[0]]])
             rough = self.log_roughness[fit]
             scale = LOG_SCATTER_FRAC
@@ -452,13 +450,13 @@ class _Rock:
             of_fit = _from_neighbours(e.depth_m, phi[fit], fit, fit)
             expected = _from_neighbours(e.depth_m, phi[fit], fit, self.judged[at])
             few = np.count_nonzero(of_fit.near) < 2
-            far = phi[fit] - of_fit.far_frac
+            far = phi[fit] - of_fit.far
             scatter = float(np.std(far)) if fit.size >= FEWEST else FACIES_SCATTER_FRAC
             for near, with_log in ((True, True), (True, False), (False, True), (False, False)):
                 here = ((expected.near & (not few)) == near) & (np.isfinite(gap[at]) == with_log)
                 if not here.any():
                     continue
-                residual = phi[fit] - (of_fit.local_frac if near else of_fit.far_frac)
+                residual = phi[fit] - (of_fit.local if near else of_fit.far)
                 used = of_fit.near if near else np.ones(fit.size, dtype=np.bool_)
                 beta = 0.0
                 if with_log:
@@ -470,7 +468,7 @@ class _Rock:
                     left, np.ones(left.size), 0.0, scatter, LEVEL_PLUGS, LEVEL_FREEDOM
                 )
                 values = np.full(self.n, np.nan)
-                values[at] = phi[self.judged[at]] - (expected.local_frac if near else expected.far_frac)
+                values[at] = phi[self.judged[at]] - (expected.local if near else expected.far)
                 values = values - (beta * gap if with_log else 0.0)
                 put = at[here]
                 self._put(found, put, fit[used], values, predicted, own, label)
@@ -545,7 +543,7 @@ class _Rock:
                 density[fit],
                 np.ones(fit.size),
                 float(np.median(density[fit])),
-                0.01,
+                GRAIN_SCATTER_G_CM3,
                 LEVEL_PLUGS,
                 LEVEL_FREEDOM,
             )
@@ -593,8 +591,8 @@ def _without_strays(phi: Array, log_k: Array, fit: NDArray[np.intp]) -> NDArray[
 class _Expected:
     """What is expected of plugs from those within `NEIGHBOURS_M`, and from all of the group."""
 
-    local_frac: Array
-    far_frac: Array
+    local: Array
+    far: Array
     near: Mask
     count: NDArray[np.intp]
 
