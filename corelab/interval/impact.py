@@ -59,11 +59,13 @@ SHARED = 0.5
 SOFT_BY_FIRMNESS: Mapping[str, float] = {"loose": 3.0, "friable": 2.0, "firm": -0.5, "hard": -3.0}
 SOFT_MIDDLE_FRAC, SOFT_STEP_FRAC, SOFT_MOST = 0.22, 0.03, 2.0
 SOFT_LIMIT = 3.0
+#: Rock is surely soft or hard from odds of 4 to 1 (assumed).
+SURE = float(np.log(4.0))
 MATRIX_G_CM3, FLUID_G_CM3 = 2.65, 1.0
 #: Washed out beyond the bit by so much, or corrected by more: the pad has lost the wall (common practice).
 WASHOUT_MM, CORRECTION_G_CM3 = 38.0, 0.10
-#: Scatter of grain density in a facies, before any plug is compared; off by more than so much, and so many times
-#: its scatter, it is strange (assumed).
+#: Scatter of grain density in a facies, before any plug is compared; off by more than so much, and by so many
+#: times its scatter, it is strange (assumed).
 GRAIN_SCATTER_G_CM3, OFF_DENSITY_G_CM3, OFF_DENSITY_T = 0.01, 0.03, 3.0
 #: The sand limit, and the sieves that come near it (mm).
 FINES_MM, FINES_WITHIN_MM = 0.0625, (0.053, 0.080)
@@ -313,29 +315,33 @@ class _Rock:
             same = (e.facies[others, np.newaxis] == e.facies[known]) & (e.facies[others] != "")[:, np.newaxis]
             fall = np.exp(-np.nan_to_num(near, nan=np.inf) / NEIGHBOURS_M)
             weight = np.where(same, 0.02 + fall, 0.0)
-            alone = weight.sum(axis=1) == 0.0
-            weight[alone] = np.where(near[alone] < NEIGHBOURS_M, fall[alone], 0.0)
             total = weight.sum(axis=1)
-            mean = weight @ own[known] / np.where(total > 0.0, total, 1.0)
-            soft[others] = np.where(total > 0.0, mean + 0.5 * by_log[others], soft[others])
+            of_facies = weight @ own[known] / np.where(total > 0.0, total, 1.0) + 0.5 * by_log[others]
+            closest = np.exp(-np.nan_to_num(near, nan=np.inf) / FALL_M)
+            of_bed = 0.5 * (closest @ own[known]) / (0.5 + closest.sum(axis=1)) + soft[others]
+            soft[others] = np.where(total > 0.0, of_facies, of_bed)
         return np.clip(soft, -SOFT_LIMIT, SOFT_LIMIT)
 
     def groups(self, usable: Mask, fewest: int) -> list[tuple[NDArray[np.intp], NDArray[np.intp], str]]:
         """Judged plugs (places among them) with the references that speak of them, and what these are called.
 
-        References of the same facies and rock class where there are enough, else of the rock class.
+        References of the same facies and rock class where there are enough, else of the rock class; where
+        that is not sure either, all of them, which scatter more.
         """
         e, found = self.evidence, []
         facies, soft = e.facies[self.judged], self.rock_class[self.judged]
+        sure = np.abs(self.soft_log_odds[self.judged]) >= SURE
         pool = self.reference & usable
-        for name, is_soft in dict.fromkeys(zip(facies.tolist(), soft.tolist(), strict=True)):
-            at = np.flatnonzero((facies == name) & (soft == is_soft))
+        kinds = zip(facies.tolist(), soft.tolist(), sure.tolist(), strict=True)
+        for name, is_soft, is_sure in dict.fromkeys(kinds):
+            at = np.flatnonzero((facies == name) & (soft == is_soft) & (sure == is_sure))
             of_class = pool & (self.rock_class == is_soft)
             own = of_class & (e.facies == name)
             if name and np.count_nonzero(own) >= FEWEST:
                 found.append((at, np.flatnonzero(own), name))
-            elif np.count_nonzero(of_class) >= fewest:
-                found.append((at, np.flatnonzero(of_class), "soft rock" if is_soft else "hard rock"))
+            elif np.count_nonzero(of_class if is_sure else pool) >= fewest:
+                label = ("soft rock" if is_soft else "hard rock") if is_sure else "any rock"
+                found.append((at, np.flatnonzero(of_class if is_sure else pool), label))
         return found
 
     def _put(

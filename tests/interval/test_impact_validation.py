@@ -116,6 +116,19 @@ def test_harder_wells():
     assert blind(HARD)[0] <= 0.05
 
 
+def test_wells_whose_facies_have_no_names():
+    """Rock class then rests on log, neighbours and firmness; without these no false certainty comes."""
+    unnamed = Law(named=False)
+    found, p, y = judged(unnamed)
+    assert [found.auc, found.skill] == pytest.approx(
+        printed(rf"without names {NUMBER} and {NUMBER}"), abs=0.0101
+    )
+    for what in ((), ("log",), ("descriptions",), ("log", "descriptions")):
+        found, p, y = judged(unnamed, *what)
+        assert found.skill > 0.0 and abs(found.mean - found.rate) <= 0.1
+        assert np.mean(p[~y] >= 0.7) <= 0.05
+
+
 def test_without_one_kind_of_evidence_after_another():
     stated = printed(
         rf"Skill without the log {NUMBER}, without descriptions {NUMBER}, without core and rotary {NUMBER}, "
