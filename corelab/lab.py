@@ -634,6 +634,8 @@ class Lab:
         approved
             As it was approved, from the readings that were in force then.
         """
+        if store.name_key(result) in {"crush likelihood", "crush verdict"}:
+            raise Usage(f"The crush likelihood is explained, evidence by evidence, by 'corelab impact {well}'.")
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             if approved:

@@ -115,6 +115,11 @@ def test_a_well_without_percussion_plugs_says_so(demo: Lab):
         demo.impact("QB-11")
 
 
+def test_asking_to_explain_it_points_to_the_evidence(demo: Lab):
+    with pytest.raises(Usage, match="corelab impact QB-1"):
+        demo.explain("QB-1", "P1", "Crush likelihood")
+
+
 def test_the_methods_say_what_was_tested():
     told = methods("impact")[0]
     assert "Brier skill" in told["tested"] and "blind" in told["tested"]
