@@ -635,7 +635,7 @@ class Lab:
             As it was approved, from the readings that were in force then.
         """
         if store.name_key(result) in {"crush likelihood", "crush verdict"}:
-            raise Usage(f"The crush likelihood is explained, evidence by evidence, by 'corelab impact {well}'.")
+            raise Usage(f"The crush likelihood is explained by its evidence: 'corelab impact {well}'.")
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             if approved:
