@@ -7,9 +7,9 @@ references: what they say of a plug never rests on the plug itself.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict, dataclass, field
-from typing import Any
+from typing import Any, Protocol
 
 import numpy as np
 import pandas as pd
@@ -78,7 +78,71 @@ class DensityLog:
     depth_m: Array
     density_g_cm3: Array
     bad: Mask
-    name: str = "density log"
+
+
+class Curve(Protocol):
+    """A logged curve on log depth."""
+
+    @property
+    def mnemonic(self) -> str: ...
+    @property
+    def unit(self) -> str: ...
+    @property
+    def depth_m(self) -> Array: ...
+    @property
+    def values(self) -> Array: ...
+
+
+#: Units of density and of a caliper as logs have them, and what they are worth in g/cm3 and mm.
+_DENSITY_UNITS = {"g/cm3": 1.0, "g/c3": 1.0, "g/cc": 1.0, "gm/cc": 1.0, "k/m3": 1e-3, "kg/m3": 1e-3}
+_LENGTH_UNITS = {"in": 25.4, "inch": 25.4, "inches": 25.4, "mm": 1.0, "cm": 10.0, "m": 1000.0}
+#: A bulk density lies within; what lies about zero in the same unit is its correction.
+_BULK_G_CM3 = (1.2, 3.2)
+
+
+def density_of(curves: Sequence[Curve], bit_mm: float = np.nan) -> DensityLog | None:
+    """The density log among the curves of a well: the last one loaded, with what tells of the hole.
+
+    It is bad where the correction curve, or the caliper over the bit, says that the pad had no touch. A bit
+    not known is taken from the smallest tenth of the caliper's readings.
+    """
+    density: Curve | None = None
+    correction: Curve | None = None
+    caliper: Curve | None = None
+    for curve in curves:
+        unit = curve.unit.strip().casefold()
+        if unit in _DENSITY_UNITS and np.isfinite(curve.values).any():
+            middle = np.nanmedian(curve.values) * _DENSITY_UNITS[unit]
+            if _BULK_G_CM3[0] <= middle <= _BULK_G_CM3[1]:
+                density = curve
+            elif abs(middle) < _BULK_G_CM3[0] / 2.0:
+                correction = curve
+        elif unit in _LENGTH_UNITS and curve.mnemonic.upper().startswith(("CAL", "HCAL", "C1", "LCAL")):
+            caliper = curve
+    if density is None:
+        return None
+    depth = np.asarray(density.depth_m, dtype=np.float64)
+    bad = np.zeros(depth.shape, dtype=np.bool_)
+    if correction is not None:
+        factor = _DENSITY_UNITS[correction.unit.strip().casefold()]
+        bad |= np.abs(_at(correction, depth)) * factor > CORRECTION_G_CM3
+    if caliper is not None:
+        hole_mm = _at(caliper, depth) * _LENGTH_UNITS[caliper.unit.strip().casefold()]
+        if np.isnan(bit_mm) and np.isfinite(hole_mm).any():
+            bit_mm = float(np.nanquantile(hole_mm, 0.1))
+        bad |= hole_mm - bit_mm > WASHOUT_MM
+    g_cm3 = np.asarray(density.values, dtype=np.float64) * _DENSITY_UNITS[density.unit.strip().casefold()]
+    return DensityLog(depth, g_cm3, bad)
+
+
+def _at(curve: Curve, depth_m: Array) -> Array:
+    """A curve at other depths; NaN where it has nothing."""
+    there = np.isfinite(curve.values) & np.isfinite(curve.depth_m)
+    if not there.any():
+        return np.full(depth_m.shape, np.nan)
+    at, values = np.asarray(curve.depth_m)[there], np.asarray(curve.values)[there]
+    order = np.argsort(at, kind="stable")
+    return np.interp(depth_m, at[order], values[order], left=np.nan, right=np.nan)
 
 
 @dataclass(frozen=True, slots=True)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import time
 from dataclasses import replace
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -177,6 +178,24 @@ def test_a_washed_out_hole_is_not_evidence():
     a = assess(washed, 0.35)
     assert np.all(np.isnan(a.found["density log"].difference))
     assert "washed out" in " ".join(impact.missing_words(a, 0))
+
+
+def curve(mnemonic: str, unit: str, values: list[float]) -> SimpleNamespace:
+    array = np.array(values)
+    return SimpleNamespace(mnemonic=mnemonic, unit=unit, depth_m=np.arange(array.size) * 0.5, values=array)
+
+
+def test_the_density_log_is_found_among_the_curves_and_knows_where_the_hole_is_bad():
+    gamma = curve("GR", "GAPI", [30.0, 40.0, 50.0, 40.0])
+    density = curve("RHOB", "K/M3", [2200.0, 2250.0, np.nan, 2300.0])
+    correction = curve("DRHO", "G/C3", [0.01, 0.15, 0.0, -0.02])
+    caliper = curve("CALI", "IN", [8.5, 8.5, 8.6, 11.0])
+    found = impact.density_of([gamma, correction, density, caliper], bit_mm=215.9)
+    np.testing.assert_allclose(found.density_g_cm3, [2.2, 2.25, np.nan, 2.3])
+    assert found.bad.tolist() == [False, True, False, True]
+    assert impact.density_of([density, caliper]).bad.tolist() == [False, False, False, True]
+    assert impact.density_of([density]).bad.tolist() == [False] * 4
+    assert impact.density_of([gamma, correction, caliper]) is None
 
 
 def test_fines_beyond_the_facies_speak_for_damage():
