@@ -19,7 +19,7 @@ from corelab.bench import load as loading
 from corelab.bench import settings as lab_settings
 from corelab.bench.parse import Row
 from corelab.errors import NotFound, Problem, Refused, Unavailable, Usage, did_you_mean, quoted
-from corelab.interval import board, controlled, explain, life, other_labs, recovery, select
+from corelab.interval import board, controlled, explain, impact, life, other_labs, recovery, select
 from corelab.records import engine as engines
 from corelab.records import history, logs, migrate, schema, store
 from corelab.review import approve, entitled, issued, roles
@@ -231,12 +231,18 @@ class Lab:
         ]
         return pd.DataFrame(rows)
 
-    def _set(self, name: str, value: str) -> None:
+    def _set(
+        self,
+        name: str,
+        value: str,
+        act: str = "change settings",
+        detail: Mapping[str, object] | None = None,
+    ) -> None:
         setting = lab_settings.setting_named(name)
         text = lab_settings.checked(name, value)
         if setting.name == "report units":
             text = ", ".join(entitled.checked_units(text))
-        with self._writing("change settings") as (connection, person):
+        with self._writing(act) as (connection, person):
             stored = store.settings(connection)
             if stored.get(setting.name) == text:
                 return
@@ -247,7 +253,8 @@ class Lab:
                 identities = store.Identities.read(connection)
                 stored[setting.name] = text
                 compute.keep(connection, list(identities.names["plug"]), stored)
-            self._close(change, person, "setting", {"name": setting.name, "value": text})
+            kept = {"name": setting.name, "value": text, **(detail or {})}
+            self._close(change, person, "setting" if detail is None else "recalibrate", kept)
 
     def person_add(self, name: str, role: str) -> None:
         """Register a person, or give a registered one another role."""
@@ -642,6 +649,8 @@ class Lab:
         approved
             As it was approved, from the readings that were in force then.
         """
+        if store.name_key(result) in {"crush likelihood", "crush verdict"}:
+            raise Usage(f"The crush likelihood is explained by its evidence: 'corelab impact {well}'.")
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             if approved:
@@ -919,6 +928,55 @@ class Lab:
         with self._reading() as connection:
             identities = store.Identities.read(connection)
             return rock_type_table(connection, identities, well, filters, percentile)
+
+    def impact(self, well: str, prior: float | None = None, *, blind: bool = False) -> list[dict[str, Any]]:
+        """Percussion plugs: the likelihood that impact changed them enough to matter, and the evidence.
+
+        Parameters
+        ----------
+        prior
+            Likelihood before any evidence; the lab's setting where None.
+        blind
+            Judge core and rotary plugs instead, as if shot: what is called likely is a false alarm.
+        """
+        if prior is not None and not 0.0 < prior < 1.0:
+            raise Usage(f"--prior lies between 0 and 1; found {prior:g}.")
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            number = select.well_id(identities, well)
+            stored = store.settings(connection)
+            frame = select.of_well(connection, identities, number, stored)
+            found = impact.of_well(connection, number, frame, stored, prior, blind=blind)
+            judged: dict[int, list[str]] = {}
+            for plug, words in store.crush_verdicts(connection, set(frame["plug_id"].tolist())):
+                judged.setdefault(plug, []).append(words)
+            facts = store.in_force(connection, "wells", [number], by="well_id")
+            unit = select.depth_unit(facts, stored)
+        rows = impact.table(found, frame, unit)
+        for row, place in zip(rows, found.place, strict=True):
+            row["judged"] = judged.get(int(frame["plug_id"].iloc[place]), [])
+        return sorted(rows, key=lambda r: (r["depth [m]"], select.natural_key(r["plug"])))
+
+    def impact_recalibrate(self, *, adopt: bool = False) -> dict[str, Any]:
+        """Two parameters learnt from persons' verdicts, with their skill; `adopt` keeps them."""
+        with self._reading() as connection:
+            identities = store.Identities.read(connection)
+            stored = store.settings(connection)
+            standards = identities.find("well", STANDARDS_WELL)
+            frames = {
+                number: select.of_well(connection, identities, number, stored)
+                for number in identities.names["well"]
+                if number != standards
+            }
+            found = impact.recalibrated(impact.labelled(connection, frames, stored), stored)
+        if adopt:
+            shown = {
+                "verdicts": found["verdicts"],
+                "skill as it was": round(found["as it is"]["skill"], 4),
+                "cross-validated skill": round(found["recalibrated"]["skill"], 4),
+            }
+            self._set("crush recalibration", found["setting"], "recalibrate the crush likelihood", shown)
+        return found
 
     def history(self, well: str = "", plug: str = "") -> pd.DataFrame:
         """Who entered or changed what, when and why."""

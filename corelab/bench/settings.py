@@ -119,9 +119,18 @@ SETTINGS: Mapping[str, Setting] = MappingProxyType(
                 low=0.01,
                 high=0.99,
             ),
+            Setting(
+                "crush recalibration",
+                "Correction of crush likelihoods learnt from verdicts of persons; see 'corelab recalibrate'.",
+                "none",
+            ),
         )
     }
 )
+
+
+#: How a recalibration is written: what is added to the log-odds, and by what the evidence is multiplied.
+RECALIBRATION = r"intercept ([+-]?\d+\.?\d*), slope (\d+\.?\d*)"
 
 
 def setting_named(name: str) -> Setting:
@@ -147,6 +156,13 @@ def checked(name: str, typed: str) -> str:
         if text.casefold() not in setting.choices:
             raise Usage(f"'{setting.name}' takes one of: {', '.join(setting.choices)}; found {quoted(text)}.")
         return text.casefold()
+    if setting.name == "crush recalibration":
+        text = " ".join(text.casefold().split())
+        if text != "none" and not re.fullmatch(RECALIBRATION, text):
+            raise Usage(
+                f"'{setting.name}' is 'none' or such as 'intercept -0.2, slope 0.8'; found {quoted(typed)}."
+            )
+        return text
     if setting.name == "time zone":
         from zoneinfo import ZoneInfo
 

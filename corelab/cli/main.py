@@ -733,6 +733,48 @@ def interval(
     show.tell(f"Wrote {len(frame)} plug{'' if len(frame) == 1 else 's'} to {out}.")
 
 
+@app.command()
+def impact(
+    well: Well,
+    prior: Annotated[
+        float | None, typer.Option(metavar="P", help="Likelihood before any evidence; else the setting.")
+    ] = None,
+    blind: Annotated[
+        bool, typer.Option("--blind", help="Judge core and rotary plugs as if shot: the false alarms.")
+    ] = False,
+    form: TableOrJson = "table",
+) -> None:
+    """Percussion plugs: crush likelihood and the evidence for it."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        rows = lab.impact(well, prior, blind=blind)
+    if form == "json":
+        show.print_json(rows)
+    else:
+        from corelab.cli import crush
+
+        crush.print_impact(rows, blind=blind)
+
+
+@app.command()
+def recalibrate(
+    adopt: Annotated[
+        bool, typer.Option("--adopt", help="Use it from now on; recorded as a setting.")
+    ] = False,
+    form: TableOrJson = "table",
+) -> None:
+    """Learn from persons' crush verdicts: shows the cross-validated skill, and adopts it if asked."""
+    _one_of("--format", form, "table", "json")
+    with _lab() as lab:
+        found = lab.impact_recalibrate(adopt=adopt)
+    if form == "json":
+        show.print_json([found])
+        return
+    from corelab.cli import crush
+
+    crush.print_recalibration(found, adopted=adopt)
+
+
 def _interval_table(frame: pd.DataFrame, room: int | None) -> str:
     """As many columns as there is room for, the most wanted first; flags as numbers of notes below."""
     marks, notes = show.numbered(frame["flags"].tolist())

@@ -19,7 +19,7 @@ from corelab.bench.outcome import STRESS_NOT_STATED
 from corelab.bench.reduce import REPORTED
 from corelab.bench.texture import TEXTURE
 from corelab.errors import NotFound, Usage, did_you_mean, quoted
-from corelab.interval import other_labs
+from corelab.interval import impact, other_labs
 from corelab.interval import where as conditions
 from corelab.interval.controlled import doubts_of
 from corelab.interval.frozen import released_words, shown_results
@@ -168,8 +168,6 @@ def interval(
     stored = store.settings(connection)
     well_facts = store.in_force(connection, "wells", [number], by="well_id")
     unit = depth_unit(well_facts, stored, filters.unit)
-    frame = _facts(connection, identities, number, well_facts, stored)
-    _place(frame, filters.depth, logs.shifts(connection, number))
     stress_mpa = filters.stress_mpa
     if filters.poisson_ratio is not None:
         if stress_mpa is None:
@@ -177,7 +175,10 @@ def interval(
         if not 0.0 <= filters.poisson_ratio < 0.5:
             raise Usage(f"Poisson's ratio lies from 0 to below 0.5; found {filters.poisson_ratio:g}.")
         stress_mpa = equivalent_stress_mpa(stress_mpa, filters.poisson_ratio)
-    _add_results(frame, connection, identities, stored, stress_mpa)
+    frame = of_well(connection, identities, number, stored, filters.depth, stress_mpa)
+    if (frame["source"] == impact.PERCUSSION).any():
+        plain = frame if stress_mpa is None else of_well(connection, identities, number, stored)
+        impact.add_columns(frame, impact.of_well(connection, number, plain, stored))
     if not filters.own_only:
         frame = _with_others(frame, connection, identities, number, filters.depth, stress_mpa)
     if unit != "m":
@@ -211,6 +212,22 @@ def laboratory_of(connection: sa.Connection, well_facts: pd.DataFrame, stored: M
         jobs = store.in_force(connection, "jobs", [int(well_facts["job_id"].iloc[-1])], "job_id")
         laboratory = str(jobs["laboratory"].iloc[-1]) if len(jobs) else laboratory
     return laboratory
+
+
+def of_well(
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: int,
+    stored: Mapping[str, str],
+    depth: str = "",
+    stress_mpa: float | None = None,
+) -> pd.DataFrame:
+    """Every plug of a well with `plug_id` and its results, in metres; the crush columns still empty."""
+    facts = store.in_force(connection, "wells", [well], by="well_id")
+    frame = _facts(connection, identities, well, facts, stored)
+    _place(frame, depth, logs.shifts(connection, well))
+    _add_results(frame, connection, identities, stored, stress_mpa)
+    return frame
 
 
 def _latest_text(frame: pd.DataFrame, by: str, column: str) -> dict[int, str]:

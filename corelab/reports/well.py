@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import json
-from collections.abc import Mapping
+from collections.abc import Mapping, Set
 from typing import Any
 
 import pandas as pd
@@ -13,6 +13,7 @@ import sqlalchemy as sa
 from corelab.bench import settings as lab_settings
 from corelab.formats.well_heading import WellHeading
 from corelab.interval import life, other_labs, recovery, select
+from corelab.interval.impact import PERCUSSION
 from corelab.records import history, store
 from corelab.reports.workbook import TableSheet, WellReport
 from corelab.review import entitled
@@ -52,17 +53,21 @@ def report(
         entries = entries[entries["kind"].isin(sheets)]
     runs = recovery.core_runs(connection, identities, number, unit)
     shots = recovery.shots(connection, identities, number)
-    used = used_methods(connection, plug_ids)
+    shot = bool((results["source"] == PERCUSSION).any())
+    used = used_methods(connection, plug_ids, {"impact"} if shot else set())
     remarks = [
         "The results hold for the samples tested, as they were received.",
         "A value below or above a limit is the limit itself, and says so in its note.",
         "Klinkenberg permeability is the limit at infinite mean pressure; where it is estimated from a "
         "published law, the note says so.",
     ]
-    if (results["source"] == "percussion sidewall").any():
+    if shot:
         remarks.append(
             "Percussion sidewall plugs: the impact of the bullet can have changed porosity and permeability; "
-            "lithology and saturations stay useful (common practice)."
+            "lithology and saturations stay useful (common practice). Crush likelihood is the probability "
+            "that it changed porosity by more than 0.02 or permeability by more than a factor of 2; before "
+            f"any evidence {lab_settings.number(stored, 'crush prior'):g} is assumed. The measurements are "
+            "not altered."
         )
     if (results["status"] == other_labs.STATUS).any():
         remarks.append(
@@ -208,13 +213,15 @@ def _last(frame: pd.DataFrame) -> dict[str, Any]:
     return {str(k): v for k, v in frame.iloc[-1].to_dict().items()} if len(frame) else {}
 
 
-def used_methods(connection: sa.Connection, plug_ids: list[int]) -> list[dict[str, str]]:
-    """The calculations behind the stored results of these plugs, in the words of the code."""
+def used_methods(
+    connection: sa.Connection, plug_ids: list[int], asked: Set[str] = frozenset()
+) -> list[dict[str, str]]:
+    """The calculations behind the stored results of these plugs and those `asked`, in the code's words."""
     from corelab.science.catalogue import formulas
 
     known = formulas()
     stored = store.results(connection, plug_ids)["method"].unique()
-    methods = {m for text in stored for m in text.split(" + ")}
+    methods = {m for text in stored for m in text.split(" + ")} | asked
     for key in list(methods):
         methods |= set(_RESTS_ON.get(key, ()))
     return [described(known[key]) for key in known if key in methods]
@@ -227,6 +234,17 @@ _RESTS_ON: Mapping[str, tuple[str, ...]] = {
     "gas-permeability": ("gas-viscosity", "flow-rate-conversion"),
     "bulk-volume-displacement": ("mercury-density",),
     "saturations": ("water-mass", "brine-volume", "oil-mass"),
+    "impact": (
+        "impact-permeability",
+        "impact-density-log",
+        "impact-neighbours",
+        "impact-packing",
+        "impact-fines",
+        "impact-condition",
+        "permeability-change-kozeny-carman",
+        "density-porosity",
+        "packing-porosity",
+    ),
 }
 #: Arguments of an estimator that are no quantity of an equation.
 _NO_QUANTITY = {"group", "refused", "demanded", "rising", "covariance", "covariance_md_kpa"}

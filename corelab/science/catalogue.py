@@ -22,6 +22,7 @@ MODULES = (
     "trends",
     "rock_types",
     "back_transform",
+    "impact",
 )
 """Modules of `corelab.science` that declare `FORMULAS`; a new one is named here."""
 

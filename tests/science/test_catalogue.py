@@ -130,6 +130,25 @@ POSSIBLE = {
     "centre": 50.0,
     "sigma": 0.1,
     "count": 12.0,
+    "porosity_before_frac": 0.35,
+    "porosity_after_frac": 0.30,
+    "bulk_density_g_cm3": 2.2,
+    "matrix_density_g_cm3": 2.65,
+    "fluid_density_g_cm3": 1.0,
+    "residual_decades": -0.4,
+    "scale_decades": 0.2,
+    "freedom": 8.0,
+    "slope_decades": 14.0,
+    "porosity_change_frac": -0.04,
+    "permeability_change_decades": -0.8,
+    "difference_frac": -0.03,
+    "scale_frac": 0.015,
+    "shared": 0.3,
+    "packing_frac": 0.1,
+    "excess_frac": 0.04,
+    "fines_added_frac": 0.03,
+    "prior_frac": 0.3,
+    "evidence_log_odds": 0.8,
     **{
         f"percentile_{p}_phi": phi
         for p, phi in zip((5, 16, 25, 50, 75, 84, 95), (0.9, 1.4, 1.6, 2.1, 2.7, 3.0, 3.9), strict=True)
@@ -139,6 +158,8 @@ TEXTS = {
     "gas": ["nitrogen", "air", "helium"],
     "other_gas": ["helium", "nitrogen", "air"],
     "salt": ["none", "left", "leached"],
+    "mark": ["powdered", "cracked", "intact"],
+    "kind": ["sound", "compacted", "shattered"],
 }
 TREND = {
     "porosity_frac": np.linspace(0.06, 0.28, 12),
@@ -247,6 +268,18 @@ ANY_SIGN = {
     ("later-deviate", "centre"),
     ("normalised-error", "value"),
     ("normalised-error", "certified"),
+    ("impact-permeability", "residual_decades"),
+    ("impact-permeability", "slope_decades"),
+    ("impact-permeability", "permeability_change_decades"),
+    ("impact-density-log", "difference_frac"),
+    ("impact-neighbours", "difference_frac"),
+    ("impact-fines", "excess_frac"),
+    ("impact-fines", "fines_added_frac"),
+    ("impact", "evidence_log_odds"),
+    *(
+        (f"impact-{t}", "porosity_change_frac")
+        for t in ("permeability", "density-log", "neighbours", "packing")
+    ),
 }
 LEAVES_MISSING_OUT = {"flow-units", "dykstra-parsons"}
 ALL = list(formulas().values())
