@@ -20,7 +20,7 @@ from scipy import special
 from corelab import units
 from corelab.bench import settings as lab_settings
 from corelab.errors import Problem, Refused
-from corelab.records import store
+from corelab.records import logs, store
 from corelab.science import impact as science
 from corelab.science import texture
 
@@ -782,7 +782,9 @@ def _fines(connection: sa.Connection, place: pd.Series[int]) -> Array:
 
 def density_log(connection: sa.Connection, well: int) -> DensityLog | None:
     """The density log of a well, with the places where the hole is too wide for it."""
-    return None
+    facts = store.in_force(connection, "wells", [well], by="well_id")
+    bit_mm = float(facts["bit_diameter_mm"].iloc[-1]) if len(facts) else np.nan
+    return density_of(logs.curves(connection, well), bit_mm)
 
 
 def of_well(
