@@ -22,7 +22,7 @@ from corelab.science.uncertainty import monte_carlo, propagate
 CONTRACT = runpy.run_path(str(Path(__file__).with_name("test_catalogue.py")))
 TEXTS = CONTRACT["TEXTS"]
 # a formula of texts only has nothing to propagate
-FORMULAS = [f for f in CONTRACT["ELEMENTWISE"] if any(s.name not in TEXTS for s in f.inputs)]
+FORMULAS = [f for f in CONTRACT["ELEMENTWISE"] if f.smooth and any(s.name not in TEXTS for s in f.inputs)]
 DRAWS = 4000
 
 
