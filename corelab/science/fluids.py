@@ -421,7 +421,7 @@ def brine_density_g_cm3(salinity_g_kg: ArrayLike, temperature_degc: ArrayLike) -
     C = 0.118547e-7 - 0.6599143e-10 T, D = -2.5166 + 0.0111766 T - 0.170552e-4 T^2,
     E = 2.84851 - 0.0154305 T + 0.223982e-4 T^2, F = -0.0014814 + 0.82969e-5 T - 0.12469e-7 T^2,
     G = 0.0027141 - 0.15391e-4 T + 0.22655e-7 T^2, H = 0.62158e-6 - 0.40075e-8 T + 0.65972e-11 T^2.
-    Within 0.0009 g/cm3 of the handbook tables. Some transcriptions misprint D and E.
+    Within 0.0009 g/cm3 of the handbook tables. Some reprints have D and E wrong.
     Published range: 0 to 150 degC, to 250 g/kg (from memory).
 
     References

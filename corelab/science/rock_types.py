@@ -200,7 +200,7 @@ def winland_r35_um(gas_permeability_md: ArrayLike, porosity_frac: ArrayLike) -> 
 
     References
     ----------
-    Kolodzie, S. 1980, SPE 9382, who prints Winland's equation (coefficients found in several transcriptions).
+    Kolodzie, S. 1980, SPE 9382, who prints Winland's equation (coefficients at second hand, several agreeing).
 
     Examples
     --------
@@ -297,7 +297,7 @@ def pittman_radii_um(gas_permeability_md: ArrayLike, porosity_frac: ArrayLike) -
 
     References
     ----------
-    Pittman, E. D. 1992, AAPG Bull. 76:191-198 (coefficients from memory, equal to a transcription).
+    Pittman, E. D. 1992, AAPG Bull. 76:191-198 (coefficients from memory, equal to one at second hand).
 
     Examples
     --------
@@ -360,8 +360,8 @@ def lucia_permeability_md(rock_fabric_number: ArrayLike, porosity_frac: ArrayLik
 
     References
     ----------
-    Jennings, J. W. & Lucia, F. J. 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients found in a
-    transcription).
+    Jennings, J. W. & Lucia, F. J. 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients at second
+    hand).
 
     Examples
     --------
@@ -401,8 +401,8 @@ def rock_fabric_number(permeability_md: ArrayLike, porosity_frac: ArrayLike) -> 
 
     References
     ----------
-    Jennings, J. W. & Lucia, F. J. 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients found in a
-    transcription).
+    Jennings, J. W. & Lucia, F. J. 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients at second
+    hand).
 
     Examples
     --------
@@ -627,7 +627,7 @@ FORMULAS: tuple[Formula, ...] = (
         (_AIR, _PHI),
         (Symbol("r35", "r35_um", "um", "throat radius at 35 % mercury saturation"),),
         "sandstones and carbonates; permeability to air",
-        "Kolodzie 1980, SPE 9382 (coefficients found in several transcriptions)",
+        "Kolodzie 1980, SPE 9382 (coefficients at second hand, several agreeing)",
         "four worked values; median of the plugs of a Norwegian well",
         winland_r35_um,
     ),
@@ -639,7 +639,7 @@ FORMULAS: tuple[Formula, ...] = (
         (_AIR, _PHI),
         tuple(Symbol(f"r{p}", f"r{p}_um", "um", f"throat radius at {p} % mercury") for p in PITTMAN),
         "sandstones; radii that rise with the percentile lie outside the regressions",
-        "Pittman 1992, AAPG Bull. 76:191-198 (coefficients from memory, equal to a transcription)",
+        "Pittman 1992, AAPG Bull. 76:191-198 (coefficients from memory, equal to one at second hand)",
         "all percentiles at 100 mD, 0.20",
         pittman_radii_um,
     ),
@@ -651,7 +651,7 @@ FORMULAS: tuple[Formula, ...] = (
         (Symbol("n", "rock_fabric_number", "1", "rock fabric number", 0.5, 4.0), _PHI),
         (_K,),
         "non-vuggy carbonates, interparticle porosity",
-        "Jennings & Lucia 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients found in a transcription)",
+        "Jennings & Lucia 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients at second hand)",
         "five worked values",
         lucia_permeability_md,
     ),
@@ -663,7 +663,7 @@ FORMULAS: tuple[Formula, ...] = (
         (_K, _PHI),
         (Symbol("n", "rock_fabric_number", "1", "rock fabric number"),),
         "non-vuggy carbonates, interparticle porosity above 0.035",
-        "Jennings & Lucia 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients found in a transcription)",
+        "Jennings & Lucia 2003, SPE Reserv. Eval. Eng. 6:215-223 (coefficients at second hand)",
         "inverse of five worked values",
         rock_fabric_number,
     ),

@@ -232,7 +232,7 @@ def kell_kg_m3(t: float, denominator: float) -> float:
 
 def test_water_agrees_with_kell_and_not_with_his_misprint():
     ours = water_density_g_cm3(20.0) * 1000.0
-    # Kell 1975: 998.204 kg/m3 at 20 degC; a transcription with 16.897850e-3 gives 997.936
+    # Kell 1975: 998.204 kg/m3 at 20 degC; a reprint with 16.897850e-3 gives 997.936
     assert kell_kg_m3(20.0, 16.879850e-3) == pytest.approx(998.204, abs=0.0005)
     assert ours == pytest.approx(kell_kg_m3(20.0, 16.879850e-3), abs=0.003)
     assert ours - kell_kg_m3(20.0, 16.897850e-3) > 0.26

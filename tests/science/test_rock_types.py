@@ -4,7 +4,7 @@ Published
 - RQI, phi_z, FZI: Amaefule et al. 1993, SPE 26436; constants 0.0314 and 1014.24 as found in two public texts.
 - r35: Winland's equation, Kolodzie 1980, SPE 9382. Percent porosity, though one text in circulation says
   fraction.
-- radii of all percentiles: Pittman 1992, AAPG Bull. 76:191-198, coefficients as transcribed.
+- radii of all percentiles: Pittman 1992, AAPG Bull. 76:191-198, coefficients at second hand.
 - rock fabric: Jennings & Lucia 2003, SPE Reserv. Eval. Eng. 6:215-223. A handbook's natural-log form prints
   27.56 for what must read 22.56.
 Worked values were computed apart from the program, with those coefficients. Real plugs: well 7121/8-1
