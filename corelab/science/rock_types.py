@@ -200,7 +200,7 @@ def winland_r35_um(gas_permeability_md: ArrayLike, porosity_frac: ArrayLike) -> 
 
     References
     ----------
-    Kolodzie, S. 1980, SPE 9382, who prints Winland's equation (coefficients at second hand, several agreeing).
+    Kolodzie, S. 1980, SPE 9382, who prints Winland's equation (coefficients at second hand, several alike).
 
     Examples
     --------
