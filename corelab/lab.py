@@ -840,6 +840,8 @@ class Lab:
         from corelab.interval import depths
 
         if log is not None:
+            with self._writing("match depths", keep=False):
+                pass  # who may not match reads no log in either
             self.read_las(log, well, check=check)
         with self._writing("match depths", keep=not check) as (connection, person):
             identities = store.Identities.read(connection)
@@ -1157,6 +1159,38 @@ class Lab:
             return made.results
 
         return self._issue("workbook", well, Path(out), make, {"unit": unit}, recipient, reason)
+
+    def write_page(
+        self, well: str, out: str | Path, *, recipient: str = "", unit: str = "", reason: str = ""
+    ) -> Path:
+        """Write the page of a well that a partner opens in a browser: one file, no network."""
+        from corelab.reports.page import page_html
+        from corelab.reports.well import page, report
+
+        if Path(out).suffix.lower() not in {".html", ".htm"}:
+            raise Usage(f"A page is named .html, not {quoted(Path(out).name)}.")
+
+        def make(at: _Issuing, part: Path) -> pd.DataFrame:
+            made = report(
+                at.connection,
+                at.identities,
+                well,
+                person=at.person,
+                recipient=recipient,
+                filters=select.Filters(unit=unit),
+                issue=at,
+            )
+            shown = page(at.connection, at.identities, made, at.partner)
+            part.write_text(page_html(shown), encoding="utf-8")
+            return made.results
+
+        return self._issue("page", well, Path(out), make, {"unit": unit}, recipient, reason)
+
+    def charts(self, well: str) -> Any:
+        """Permeability against porosity and both against depth, as one Altair chart for a notebook."""
+        from corelab.reports.charts import well_charts
+
+        return well_charts(self.interval(well))
 
     def write_csv(
         self, well: str, out: str | Path, *, recipient: str = "", reason: str = "", **filters: Any

@@ -1158,6 +1158,20 @@ def write_spwla(
         show.tell(f"Wrote {out}. Seal {lab.seal()}")
 
 
+@write_app.command("page")
+def write_page(
+    well: Well,
+    out: OutFile,
+    partner: Partner = "",
+    unit: DepthUnit = "",
+    reason: Reason = "",
+) -> None:
+    """Write the page of a well that a partner opens in a browser."""
+    with _lab() as lab:
+        lab.write_page(well, out, recipient=partner, unit=unit, reason=reason)
+    show.tell(f"Wrote {out}.")
+
+
 @write_app.command("csv")
 def write_csv(
     well: Well,

@@ -96,3 +96,35 @@ def control_charts(checks: pd.DataFrame) -> Any:
         title = f"{instrument}: {result} of {standard} (limits from {part['limits'].iloc[0]})"
         drawn.append(alt.vconcat(alt.layer(line, *rules, points).properties(title=title), below))
     return alt.concat(*drawn, columns=2).configure(font="Arial")
+
+
+def well_charts(results: pd.DataFrame) -> Any:
+    """Results against depth and against each other; a stretch of depth drawn in one lights up in all."""
+    alt = altair()
+    depth = next(c for c in results.columns if c.startswith("depth ["))
+    phi, k = "porosity [v/v]", "klinkenberg permeability [mD]"
+    names = {depth: "depth", phi: "porosity", k: "permeability"}
+    rows = results.rename(columns=names)[["plug", "facies", "source", "flags", *names.values()]]
+    picked = alt.selection_interval(name="picked", encodings=["y"])
+    base = (
+        alt.Chart(rows)
+        .mark_point(filled=True, size=45)
+        .encode(
+            color=alt.condition(picked, "facies:N", alt.value("#D9D3C5")),
+            shape="source:N",
+            tooltip=["plug", "facies", "source", "depth", "porosity", "permeability", "flags"],
+        )
+    )
+    down = alt.Y("depth:Q", title=depth, scale=alt.Scale(reverse=True, zero=False))
+    lg = alt.Scale(type="log")
+    return alt.hconcat(
+        base.encode(x=alt.X("porosity:Q", title=phi), y=down)
+        .properties(width=200, height=420)
+        .add_params(picked),
+        base.transform_filter("datum.permeability > 0")
+        .encode(x=alt.X("permeability:Q", title=k, scale=lg), y=down)
+        .properties(width=200, height=420),
+        base.transform_filter("datum.permeability > 0")
+        .encode(x=alt.X("porosity:Q", title=phi), y=alt.Y("permeability:Q", title=k, scale=lg))
+        .properties(width=340, height=420),
+    )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import json
-from collections.abc import Mapping, Set
+from collections.abc import Mapping, Sequence, Set
 from typing import Any
 
 import pandas as pd
@@ -15,6 +15,8 @@ from corelab.formats.well_heading import WellHeading
 from corelab.interval import life, other_labs, recovery, select
 from corelab.interval.impact import PERCUSSION
 from corelab.records import history, store
+from corelab.reports import gathered
+from corelab.reports.page import Page
 from corelab.reports.workbook import TableSheet, WellReport
 from corelab.review import entitled
 from corelab.review.issued import Issuing, revisions
@@ -86,16 +88,65 @@ def report(
         cautions=_cautions(entries),
         remarks=remarks,
         recipient=recipient,
-        tables=_tables(issue, results),
+        tables=_tables(connection, identities, well, issue, results, partner, symbols, unit),
     )
 
 
-def _tables(issue: Issuing | None, results: pd.DataFrame) -> list[TableSheet]:
+def _tables(
+    connection: sa.Connection,
+    identities: store.Identities,
+    well: str,
+    issue: Issuing | None,
+    results: pd.DataFrame,
+    partner: entitled.Partner,
+    symbols: Sequence[str],
+    unit: str,
+) -> list[TableSheet]:
     """The sheets of tables that stand between the charts and the methods."""
-    sheets: list[TableSheet] = []
+    number = select.well_id(identities, well)
+    averages = gathered.averages(connection, identities, well, partner, symbols)
+    _, fitted = gathered.fits(connection, identities, well, partner, symbols)
+    shifts = gathered.shifts(connection, identities, number, unit)
+    crushed = pd.DataFrame()
+    if gathered.allowed(partner, "porosity", "klinkenberg permeability", "crush likelihood"):
+        crushed = gathered.crush_evidence(connection, identities, well, store.settings(connection), unit)
+    told = (
+        "Horizontal and unoriented plugs, every plug alike; duplicates and likely crushed plugs left out. "
+        "Dykstra-Parsons by a line through ln k against the normal score of i/(n+1); Lorenz sorted by k over "
+        "porosity."
+    )
+    sheets = [
+        TableSheet(title, about, ((heading, words, frame),))
+        for title, about, heading, words, frame in (
+            ("summary", "averages of the well and its facies", "Averages", told, averages),
+            (
+                "trends",
+                "fits of permeability on porosity",
+                "Fits of log10 permeability on porosity",
+                "Likely crushed plugs left out. Ranked by the error on plugs left out of the fit. The "
+                "antilogarithm of a fit underestimates the mean.",
+                fitted,
+            ),
+            (
+                "depth match",
+                "core and sidewall depths on the log",
+                "Log depth less driller's depth",
+                "",
+                shifts,
+            ),
+            (
+                "crush evidence",
+                "what speaks for and against crushing of percussion plugs",
+                "Evidence, and what it does to the log-odds",
+                "The likelihood follows from the prior's log-odds and the sum of the effects.",
+                crushed,
+            ),
+        )
+        if len(frame)
+    ]
     if issue is not None:
         before, changes = revisions(issue, results)
-        told = ["export", "issue", "at", "person", "file", "reason"]
+        shown = ["export", "issue", "at", "person", "file", "reason"]
         first = "This is the first issue to this recipient."
         same = "Nothing that was shown before has changed since the last issue."
         sheets.append(
@@ -103,12 +154,29 @@ def _tables(issue: Issuing | None, results: pd.DataFrame) -> list[TableSheet]:
                 "revisions",
                 "earlier issues to the same recipient, and what changed since the last",
                 (
-                    ("Issues before this one", "" if len(before) else first, before[told]),
+                    ("Issues before this one", "" if len(before) else first, before[shown]),
                     ("What changed", "" if len(changes) or not len(before) else same, changes),
                 ),
             )
         )
     return sheets
+
+
+def page(
+    connection: sa.Connection, identities: store.Identities, made: WellReport, partner: entitled.Partner
+) -> Page:
+    """What the page shows: the report, and curves, fits and averages in its units."""
+    number = identities.find("well", made.well) or 0
+    stored = store.settings(connection)
+    symbols = partner.units or entitled.checked_units(lab_settings.value(stored, "report units"))
+    depth = next((c for c in made.results.columns if c.startswith("depth [")), "depth [m]")
+    lines, _ = gathered.fits(connection, identities, made.well, partner, symbols)
+    return Page(
+        made,
+        gathered.curves(connection, number, depth[7:-1]),
+        lines,
+        gathered.averages(connection, identities, made.well, partner, symbols),
+    )
 
 
 def heading(connection: sa.Connection, identities: store.Identities, well: str) -> WellHeading:

@@ -30,14 +30,9 @@ ROLE_OF = {
     "Tor Vale": "technician",
     "Gia Lund": "geologist",
 }
-#: Acts and methods that ask the same table and are not walked here role by role yet.
-NOT_WALKED_ACTS = {
-    "read in logs and other laboratories' results", "match depths", "recalibrate the crush likelihood",
-}  # fmt: skip
-NOT_WALKED = {
-    "read_las", "read_spwla", "read_withdraw", "match", "shift", "write_las", "write_spwla",
-    "impact_recalibrate",
-}  # fmt: skip
+#: What asks the same table and is not walked here: it needs thirty verdicts of persons to be done.
+NOT_WALKED_ACT, NOT_WALKED = "recalibrate the crush likelihood", "impact_recalibrate"
+LOG = Path(__file__).resolve().parents[2] / "demo_lab" / "logs" / "QB-2.las"
 
 
 @dataclass(frozen=True)
@@ -99,6 +94,42 @@ DOORS = {
     "write csv": Door(
         "write files", "write_csv", lambda lab, p: lab.write_csv("QB-2", p / "out.csv"),
         lambda lab, p: ["write", "csv", "QB-2", "--out", p / "out.csv"],
+    ),
+    "write page": Door(
+        "write files", "write_page", lambda lab, p: lab.write_page("QB-2", p / "out.html"),
+        lambda lab, p: ["write", "page", "QB-2", "--out", p / "out.html"],
+    ),
+    "write las": Door(
+        "write files", "write_las", lambda lab, p: lab.write_las("QB-2", p / "out.las"),
+        lambda lab, p: ["write", "las", "QB-2", "--out", p / "out.las"],
+    ),
+    "write spwla": Door(
+        "write files", "write_spwla", lambda lab, p: lab.write_spwla("QB-2", p / "out.spwla"),
+        lambda lab, p: ["write", "spwla", "QB-2", "--out", p / "out.spwla"],
+    ),
+    "read las": Door(
+        "read in logs and other laboratories' results", "read_las", lambda lab, p: lab.read_las(LOG, "QB-2"),
+        lambda lab, p: ["read", "las", LOG, "--well", "QB-2"],
+    ),
+    "read spwla": Door(
+        "read in logs and other laboratories' results", "read_spwla",
+        lambda lab, p: lab.read_spwla(p / "theirs.spwla", "QB-2", laboratory="Elsewhere", unit="ft"),
+        lambda lab, p: [
+            "read", "spwla", p / "theirs.spwla", "--well", "QB-2",
+            "--laboratory", "Elsewhere", "--unit", "ft",
+        ],
+    ),
+    "read withdraw": Door(
+        "withdraw readings", "read_withdraw", lambda lab, p: lab.read_withdraw(1, "a slip"),
+        lambda lab, p: ["read", "withdraw", 1, "--reason", "a slip"],
+    ),
+    "match": Door(
+        "match depths", "match", lambda lab, p: lab.match("QB-2", LOG),
+        lambda lab, p: ["match", "QB-2", "--log", LOG],
+    ),
+    "shift": Door(
+        "match depths", "shift", lambda lab, p: lab.shift("QB-2", "1", 0.5, "by eye"),
+        lambda lab, p: ["match", "QB-2", "--run", "1", "--shift", "0.5", "--reason", "by eye"],
     ),
     "write workbook": Door(
         "write files", "write_workbook", lambda lab, p: lab.write_workbook("QB-2", p / "out.xlsx"),
@@ -179,6 +210,8 @@ def prepared_file(
         lab.person_add("Old One", "reviewer")
         lab.by = "Runa Holt"
         lab.approve("QB-2", ["3H"], "good")
+        theirs = lab.write_spwla("QB-2", folder / "theirs.spwla")
+        lab.read_spwla(theirs, "QB-1", laboratory="Elsewhere", unit="ft")
         write_backup(lab.engine, folder / "lab.db")
     path.unlink()
     shutil.copyfile(folder / "lab.db", folder / "kept.db")
@@ -248,12 +281,12 @@ def methods_that_write() -> set[str]:
 
 
 def test_every_method_that_writes_stands_in_the_table() -> None:
-    found = methods_that_write() - {"impact_recalibrate"}
-    assert found == {door.method for door in DOORS.values()} | {"setup"} | NOT_WALKED - {"impact_recalibrate"}
+    walked = {door.method for door in DOORS.values()} | {"setup"}
+    assert methods_that_write() - {NOT_WALKED} == walked
 
 
 def test_every_act_has_a_door() -> None:
-    assert set(MAY) - {door.act for door in DOORS.values()} == NOT_WALKED_ACTS
+    assert set(MAY) - {door.act for door in DOORS.values()} == {NOT_WALKED_ACT}
     source = inspect.getsource(lab_module)
     assert [act for act in MAY if f'"{act}"' not in source] == []
 
