@@ -28,6 +28,11 @@ LEAST_CORRELATION = 0.50
 LEAST_PROBABILITY = 0.98
 MOST_UNCERTAINTY_M = 0.06
 NEAR_M = 0.25
+#: Plugs are points where a log smears over beds: shifts by plugs erred by twice the spread of their
+#: likelihood on trial wells, so that this many of them are worth one sample (assumed).
+POINTS = 4.0
+#: A second peak whose correlation comes as near as this is as good: what sets them apart is noise (assumed).
+NEARLY = 0.03
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,13 +148,15 @@ def _scan(signal: Signal, log_depth_m: Array, log_values: Array, low: float, hig
     if r[best] <= 0:
         return None
     residual = dy[best] - dx[best] * (sxy[best] / sxx[best])
-    effective = _independent(residual[known[best]], z[known[best]])
+    effective = _independent(residual[known[best]])
+    if not signal.smooth:
+        effective = max(effective / POINTS, 3.0)
     kept = np.where(r > 0, r, 0.0)
     log_likelihood = -0.5 * max(effective - 2.0, 1.0) * np.log1p(-(np.minimum(kept, 0.999999) ** 2))
     return _Scan(shifts, r, np.where(r > -1.0, log_likelihood, -np.inf), effective)
 
 
-def _independent(residual: Array, z: Array) -> float:
+def _independent(residual: Array) -> float:
     """How many independent samples neighbouring ones that err alike are worth.
 
     Errors are taken to lose their likeness exponentially with distance; n/(1 + 2 sum of correlations).
@@ -217,7 +224,8 @@ def _judged(scan: _Scan, log_likelihood: Array) -> Match | None:
     reasons = []
     if correlation < LEAST_CORRELATION:
         reasons.append(f"core and log agree poorly (correlation {correlation:.2f})")
-    if probability < LEAST_PROBABILITY:
+    rival = second >= 0 and correlation - float(scan.correlation[second]) < NEARLY
+    if probability < LEAST_PROBABILITY or rival:
         again = f", {scan.shifts[second]:+.2f} m fits nearly as well" if second >= 0 else ""
         reasons.append(f"ambiguous{again}")
     if uncertainty > MOST_UNCERTAINTY_M:
