@@ -801,7 +801,7 @@ class Lab:
                 "top [m]": float(las.depth_m.min()),
                 "base [m]": float(las.depth_m.max()),
                 "notices": list(las.notices),
-                "new": known is None or known[0] != digest,
+                "new": known != digest,
             }
             named = identities.name("well", number)
             if las.well and store.name_key(las.well) != store.name_key(named):

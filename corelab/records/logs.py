@@ -65,14 +65,14 @@ def curves(connection: sa.Connection, well_id: int) -> list[LogCurve]:
     ]
 
 
-def known_log(connection: sa.Connection, well_id: int, log: str) -> tuple[str, bool] | None:
-    """The digest of the file that a log of this name was read from, and whether that is the newest."""
+def known_log(connection: sa.Connection, well_id: int, log: str) -> str:
+    """The digest of the file that a log of this name was last read from; empty where it never was."""
     table = schema.log_curve
     rows = connection.execute(
         sa.select(table.c.log, table.c.content_digest).where(table.c.well_id == well_id).order_by(table.c.id)
     ).all()
     same = [r.content_digest for r in rows if store.name_key(r.log) == store.name_key(log)]
-    return (same[-1], True) if same else None
+    return same[-1] if same else ""
 
 
 def add_curves(
